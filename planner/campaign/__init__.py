@@ -1,0 +1,12 @@
+"""The campaign file and target lists: what may stand in them, and how they are read.
+
+In: the path of a campaign file (YAML), which holds or names a list of targets (YAML, CSV, ECSV or
+VOTable). Out: a `Reading`: the frozen campaign record, every default taken, notes on what was
+read how, and the files. Anything wrong ends in one `InputError` with every problem found.
+"""
+
+from planner.campaign.describe import as_dict, describe
+from planner.campaign.read import Reading, read_campaign
+from planner.campaign.sections import Default
+
+__all__ = ["Default", "Reading", "as_dict", "describe", "read_campaign"]

@@ -1,0 +1,158 @@
+"""From sections that are known to be sound to the frozen campaign record."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from typing import TypeVar
+
+from planner.campaign.parts import Parts
+from planner.campaign.schema import LINES, LimitsSection, SimulationSection, TimeSection
+from planner.campaign.settle import KINDS, Choices, reference_for, stream_of
+from planner.model.campaign import Campaign, Cosmology, Simulation, SuccessRule
+from planner.model.observatory import (
+    Instrument,
+    Limits,
+    Site,
+    Stream,
+    Telescope,
+    TimeAllotment,
+    WeatherClimate,
+)
+from planner.model.target import Target
+
+__all__ = ["build"]
+
+_SUN_ALTITUDE_DEG = {"civil": -6.0, "nautical": -12.0, "astronomical": -18.0}
+
+Part = TypeVar("Part")
+
+
+def build(
+    parts: Parts,
+    choices: Choices,
+    targets: Sequence[Target],
+    relations: Mapping[str, Sequence[str]] | None,
+    file_name: str,
+) -> Campaign:
+    """Return the campaign; defaults that are settled here are added to `choices`.
+
+    Parameters
+    ----------
+    parts, choices
+        Read and checked without any problem.
+    targets : sequence of Target
+    relations : mapping or None
+        Names of the known relations of each line, the usual one first.
+    file_name : str
+        Name of the campaign where it has none.
+    """
+    programme, success = _sound(parts.programme), _sound(parts.success)
+    cosmology = _sound(parts.cosmology)
+    if programme.name is None:
+        choices.take("campaign.name", file_name, "the file's name")
+    streams = {kind: _stream(parts, choices, kind) for kind in KINDS}
+    return Campaign(
+        name=programme.name or file_name,
+        first_night=programme.first_night,
+        last_night=programme.last_night,
+        seed=programme.seed,
+        targets=tuple(targets),
+        sites=_sites(parts),
+        telescopes=_telescopes(parts, choices),
+        continuum=streams["continuum"],
+        line=streams["line"],
+        limits=_limits(_sound(parts.limits)),
+        season_lengths_d=choices.season_lengths,
+        seasons=choices.seasons,
+        success=SuccessRule(
+            goal=success.goal,
+            within=success.within,
+            error_below=success.error_below,
+            r_max_above=success.r_max_above,
+            sigma_above=success.sigma_above,
+        ),
+        simulation=_simulation(_sound(parts.simulation)),
+        cosmology=Cosmology(cosmology.hubble, cosmology.omega_matter),
+        relations=_relations(parts, choices, relations),
+    )
+
+
+def _sound(part: Part | None) -> Part:
+    assert part is not None, "built from sections with problems"
+    return part
+
+
+def _sites(parts: Parts) -> tuple[Site, ...]:
+    return tuple(
+        Site(
+            name=site.name,
+            latitude_deg=site.latitude,
+            longitude_deg=site.longitude,
+            elevation_m=site.elevation,
+            time_zone=site.time_zone,
+            weather=WeatherClimate(site.weather.clear.fractions(), site.weather.bad_spell),
+        )
+        for site in parts.known_sites()
+    )
+
+
+def _telescopes(parts: Parts, choices: Choices) -> tuple[Telescope, ...]:
+    return tuple(
+        Telescope(
+            name=telescope.name,
+            site=choices.site_of[telescope.name],
+            aperture_m=telescope.aperture,
+            slew_s=telescope.slew,
+            time=_allotment(telescope.time or _sound(parts.time)),
+        )
+        for telescope in parts.known_telescopes()
+    )
+
+
+def _allotment(time: TimeSection) -> TimeAllotment:
+    blocked = tuple(blocked.run() for blocked in time.blocked)
+    return TimeAllotment(time.hours, time.nights, time.hours_per_night, blocked)
+
+
+def _stream(parts: Parts, choices: Choices, kind: str) -> Stream:
+    section, telescope = _sound(stream_of(parts, kind)), choices.telescope_of[kind]
+    reference = reference_for(kind, telescope.aperture, section, choices)
+    return Stream(
+        kind=kind,
+        telescope=telescope.name,
+        cadence_nights=choices.cadences[kind],
+        exposure_s=section.exposure,
+        overhead_s=section.overhead,
+        instrument=Instrument(
+            signal_to_noise=reference.value,
+            reference_band=reference.band,
+            reference_mag=reference.magnitude,
+            reference_s=reference.exposure,
+            reference_airmass=reference.airmass,
+            sky_share=reference.sky_share,
+            floor=section.floor,
+            extinction_mag=section.extinction,
+        ),
+    )
+
+
+def _limits(section: LimitsSection) -> Limits:
+    return Limits(section.airmass, _SUN_ALTITUDE_DEG[section.twilight], section.moon_separation)
+
+
+def _simulation(section: SimulationSection) -> Simulation:
+    least, most = section.response_width
+    return Simulation(section.trials, section.resamples, section.responsivity, (least, most))
+
+
+def _relations(
+    parts: Parts, choices: Choices, allowed: Mapping[str, Sequence[str]] | None
+) -> tuple[tuple[str, str], ...]:
+    """Return the relation of every line; ``""`` where nobody has named one."""
+    pairs = []
+    for line in LINES:
+        usual = next(iter((allowed or {}).get(line, ())), "")
+        if line not in parts.relations and usual:
+            choices.take(f"relations.{line}", usual, "the planner's first choice")
+        pairs.append((line, parts.relations.get(line, usual)))
+    return tuple(pairs)

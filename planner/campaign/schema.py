@@ -1,0 +1,299 @@
+"""The sections of the campaign file, each key with its kind, its example and its usual value.
+
+Usual values are written as an observer would write them and are read like the observer's own.
+What depends on other keys (which telescope, how deep) is settled in `build`.
+"""
+
+from __future__ import annotations
+
+from typing import Annotated, Any
+
+from pydantic import AfterValidator, BeforeValidator, Field
+
+from planner.campaign.fields import (
+    Elevation,
+    Latitude,
+    Longitude,
+    Name,
+    Night,
+    Percent,
+    TimeZone,
+    choice,
+    counted,
+    listed,
+    number,
+    percent,
+    quantity,
+    sorted_once,
+)
+from planner.campaign.sections import Section, needed, usual
+
+__all__ = [
+    "BANDS", "LINES", "TOP_KEYS", "Candidates", "ContinuumSection", "CosmologySection",
+    "LimitsSection", "LineSection", "ProgrammeSection", "ReferenceSection", "SimulationSection",
+    "SiteSection", "StreamSection", "StreamsSection", "SuccessSection", "TelescopeSection",
+    "TimeSection",
+]  # fmt: skip
+
+BANDS = ("u", "g", "r", "i", "z", "B", "V", "R")
+LINES = ("Hbeta", "Halpha", "MgII", "CIV")
+TOP_KEYS = (
+    "campaign", "targets", "site", "sites", "telescopes", "streams", "limits", "season_lengths",
+    "seasons", "time", "success", "simulation", "cosmology", "relations",
+)  # fmt: skip
+
+_EXPOSURE = "a time from 1 s to 12 h, such as 20 min"
+_PAUSE = "a time from 0 s to 12 h, such as 2 min"
+_CADENCE = "a cadence from 1 to 400 nights, such as 3 nights"
+_SEASON = "a length from 1 to 366 d, such as 120 d"
+_SHARE = "a percentage from 0 to 99, such as 20 %"
+
+Exposure = Annotated[float, quantity("s", _EXPOSURE, lambda v: 1 <= v <= 43200)]
+Pause = Annotated[float, quantity("s", _PAUSE, lambda v: 0 <= v <= 43200)]
+Cadence = Annotated[float, quantity("d", _CADENCE, lambda v: 1 <= v <= 400)]
+Cadences = Annotated[tuple[Cadence, ...], listed(_CADENCE), sorted_once]
+SeasonLength = Annotated[float, quantity("d", _SEASON, lambda v: 1 <= v <= 366)]
+Positive = Annotated[float, quantity("", "a percentage above 0, up to 100", lambda v: 0 < v <= 1)]
+Airmass = Annotated[float, number("an airmass from 1 to 10, such as 2.0", lambda v: 1 <= v <= 10)]
+BrightnessLimit = "a magnitude from 5 to 30, such as 16.2"
+MagnitudeValue = Annotated[float, number(BrightnessLimit, lambda v: 5 <= v <= 30, "mag")]
+Band = Annotated[str, choice(BANDS)]
+
+
+class ProgrammeSection(Section):
+    """``campaign``: name, dates and the seed of the random numbers."""
+
+    name: Name | None = None
+    first_night: Night = needed("the evening's date at the site, such as 2027-03-01")
+    last_night: Night = needed("the evening's date at the site, such as 2028-10-31")
+    seed: Annotated[int, counted("a whole number from 0, such as 4021", 0, 2**53)] = usual(
+        "1", "any number will do; keep it and the plan can be repeated"
+    )
+
+
+def _every_month(value: object) -> object:
+    """Take one percentage for all months, and say in one sentence which months are missing."""
+    months = Months.model_fields
+    if isinstance(value, str):
+        percent(value)  # refused once, not for each month
+        return dict.fromkeys(months, value)
+    if isinstance(value, dict) and value.keys() < months.keys():
+        missing = ", ".join(month for month in months if month not in value)
+        raise ValueError(f"nothing for {missing}; expected all twelve months, or one percentage")
+    return value
+
+
+class Months(Section):
+    """Share of clear nights in each month."""
+
+    jan: Percent = needed("a percentage such as 70 %")
+    feb: Percent = needed("a percentage such as 70 %")
+    mar: Percent = needed("a percentage such as 70 %")
+    apr: Percent = needed("a percentage such as 70 %")
+    may: Percent = needed("a percentage such as 70 %")
+    jun: Percent = needed("a percentage such as 70 %")
+    jul: Percent = needed("a percentage such as 70 %")
+    aug: Percent = needed("a percentage such as 70 %")
+    sep: Percent = needed("a percentage such as 70 %")
+    oct: Percent = needed("a percentage such as 70 %")
+    nov: Percent = needed("a percentage such as 70 %")
+    dec: Percent = needed("a percentage such as 70 %")
+
+    def fractions(self) -> tuple[float, ...]:
+        """Return the twelve shares, January first."""
+        return tuple(getattr(self, month) for month in Months.model_fields)
+
+
+class WeatherSection(Section):
+    """``weather`` of a site."""
+
+    clear: Annotated[Months, BeforeValidator(_every_month)] = usual("70 %")
+    bad_spell: Annotated[
+        float, quantity("d", "a length from 1 to 60 nights: 2.5 nights", lambda v: 1 <= v <= 60)
+    ] = usual("2.5 nights")
+
+
+class SiteSection(Section):
+    """``site``, or one of ``sites``."""
+
+    name: Name = needed("a name such as Corran Ridge")
+    latitude: Latitude = needed("a latitude, north positive, such as -30.4 deg")
+    longitude: Longitude = needed("a longitude, east positive, such as -70.9 deg")
+    elevation: Elevation = usual("0 m", "sea level; it hardly matters to a plan")
+    time_zone: TimeZone | None = None
+    weather: WeatherSection = Field(default={}, validate_default=True)
+
+
+class BlockedSection(Section):
+    """One run of nights that are not ours; without ``to``, a single night."""
+
+    first: Night = Field(alias="from", json_schema_extra={"expected": "a date"})
+    until: Night | None = Field(default=None, alias="to")
+
+    def run(self) -> tuple[int, int]:
+        """Return the first and the last night."""
+        return self.first, self.first if self.until is None else self.until
+
+
+def _one_night(value: object) -> object:
+    return {"from": value} if isinstance(value, str) else value
+
+
+_BLOCKED = "dates such as 2027-05-01, or {from: 2027-05-01, to: 2027-05-09}"
+_HOURS = "hours above 0, such as 120"
+
+
+def _hours(most: float) -> Any:
+    """Return the kind of a key whose name says hours: a bare number, or one with ``h``."""
+    return number(_HOURS, lambda v: 0 < v <= most, "h")
+
+
+class TimeSection(Section):
+    """``time``: what has been granted on each telescope. Nothing given means no limit."""
+
+    hours: Annotated[float, _hours(1e5)] | None = None
+    nights: Annotated[int, counted("a whole number of nights, such as 40", 1, 10000)] | None = None
+    hours_per_night: Annotated[float, _hours(24)] | None = None
+    blocked: Annotated[
+        tuple[Annotated[BlockedSection, BeforeValidator(_one_night)], ...], listed(_BLOCKED)
+    ] = ()
+
+
+class TelescopeSection(Section):
+    """One of ``telescopes``."""
+
+    name: Name = needed("a name such as C19")
+    site: Name | None = None
+    aperture: Annotated[
+        float, quantity("m", "a diameter from 5 cm to 40 m: 1.9 m", lambda v: 0.05 <= v <= 40)
+    ] = needed("the mirror's diameter, such as 1.9 m")
+    slew: Pause = usual("2 min")
+    time: TimeSection | None = None
+
+
+class ReferenceSection(Section):
+    """``signal_to_noise`` of a stream: one known case from which all others are scaled."""
+
+    value: Annotated[
+        float, number("a signal-to-noise above 0, such as 100", lambda v: 0 < v <= 1e5)
+    ] = needed("the signal-to-noise reached, such as 100")
+    band: Band = needed(f"one of {', '.join(BANDS)}")
+    magnitude: MagnitudeValue = needed(BrightnessLimit)
+    exposure: Exposure = needed(_EXPOSURE)
+    airmass: Airmass = usual("1.2")
+    sky_share: Annotated[float, quantity("", _SHARE, lambda v: 0 <= v <= 0.99)] = usual("20 %")
+
+
+_FLOOR = Annotated[float, quantity("", _SHARE, lambda v: 0 <= v <= 0.99)]
+
+
+class StreamSection(Section):
+    """What both streams may say."""
+
+    telescope: Name | None = None
+    cadence: Cadences | None = None
+    exposure: Exposure
+    overhead: Pause
+    signal_to_noise: ReferenceSection | None = None
+    floor: _FLOOR
+    extinction: Annotated[
+        float, number("magnitudes per airmass from 0 to 3: 0.15", lambda v: 0 <= v <= 3, "mag")
+    ] = usual("0.15")
+
+
+class ContinuumSection(StreamSection):
+    """``streams.continuum``."""
+
+    exposure: Exposure = usual("5 min")
+    overhead: Pause = usual("1 min")
+    floor: _FLOOR = usual("1.5 %")
+
+
+class LineSection(StreamSection):
+    """``streams.line``."""
+
+    exposure: Exposure = usual("20 min")
+    overhead: Pause = usual("5 min")
+    floor: _FLOOR = usual("2 %")
+
+
+class StreamsSection(Section):
+    """``streams``."""
+
+    continuum: ContinuumSection = Field(default={}, validate_default=True)
+    line: LineSection = Field(default={}, validate_default=True)
+
+
+class LimitsSection(Section):
+    """``limits``."""
+
+    airmass: Airmass = usual("2.0")
+    twilight: Annotated[str, choice(("civil", "nautical", "astronomical"))] = usual("astronomical")
+    moon_separation: Annotated[
+        float, quantity("deg", "an angle from 0 to 180 deg: 30 deg", lambda v: 0 <= v <= 180)
+    ] = usual("30 deg")
+
+
+class Candidates(Section):
+    """The candidate lists at the top level."""
+
+    season_lengths: Annotated[tuple[SeasonLength, ...], listed(_SEASON), sorted_once] | None = None
+    seasons: (
+        Annotated[
+            tuple[Annotated[int, counted("a whole number such as 2", 1, 20)], ...],
+            listed("whole numbers such as [1, 2]"),
+            sorted_once,
+        ]
+        | None
+    ) = None
+
+
+class SuccessSection(Section):
+    """``success``: when a lag is claimed, when it is right, and how often it must be."""
+
+    goal: Annotated[
+        float, quantity("", "a percentage from 1 to 99, such as 80 %", lambda v: 0.01 <= v <= 0.99)
+    ] = usual("80 %")
+    within: Positive = usual("30 %")
+    error_below: Positive = usual("30 %")
+    r_max_above: Annotated[
+        float, number("a correlation from 0 to 1, such as 0.5", lambda v: 0 <= v < 1)
+    ] = usual("0.5")
+    sigma_above: Annotated[
+        float, number("a number from 0 to 10, such as 1", lambda v: 0 <= v <= 10)
+    ] = usual("1")
+
+
+_WIDTH = "a percentage of the lag from 0 to 200, such as 50 %"
+
+
+def _range(values: tuple[float, ...]) -> tuple[float, ...]:
+    if len(values) != 2 or values[0] > values[1]:
+        raise ValueError("not a range; expected a least and a greatest width: [50 %, 150 %]")
+    return values
+
+
+class SimulationSection(Section):
+    """``simulation``."""
+
+    trials: Annotated[int, counted("a whole number of trials: 100", 1, 100000)] = usual("100")
+    resamples: Annotated[int, counted("a whole number from 10: 100", 10, 100000)] = usual("100")
+    responsivity: Annotated[
+        float, number("a number above 0, up to 5, such as 0.8", lambda v: 0 < v <= 5)
+    ] = usual("0.8")
+    response_width: Annotated[
+        tuple[Annotated[float, quantity("", _WIDTH, lambda v: 0 <= v <= 2)], ...],
+        listed("[50 %, 150 %]"),
+        AfterValidator(_range),
+    ] = usual(["50 %", "150 %"])
+
+
+class CosmologySection(Section):
+    """``cosmology``: flat, with a cosmological constant."""
+
+    hubble: Annotated[
+        float, quantity("km/(s Mpc)", "such as 70 km/s/Mpc", lambda v: 20 <= v <= 150)
+    ] = usual("70 km/s/Mpc", "round values in common use")
+    omega_matter: Annotated[
+        float, number("a fraction from 0 to 1, such as 0.3", lambda v: 0 < v <= 1)
+    ] = usual("0.3", "round values in common use")

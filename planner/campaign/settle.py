@@ -1,0 +1,141 @@
+"""What the observer left open and depends on the rest: which telescope, which candidates, how deep.
+
+Usual depths, cadences and seasons are common practice, no source. They are only starting points
+that make the smallest file work; an observer's own numbers should replace them.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+
+from planner.campaign.parts import Parts
+from planner.campaign.schema import ReferenceSection, StreamSection, TelescopeSection
+from planner.campaign.sections import COMMON, Default
+
+__all__ = ["KINDS", "Choices", "reference_for", "settle", "stream_of"]
+
+KINDS = ("continuum", "line")
+"""The two streams."""
+
+_CADENCES = {"continuum": (1.0, 2.0, 4.0), "line": (3.0, 5.0, 8.0, 12.0)}
+_SEASON_LENGTHS_D = (60.0, 90.0, 120.0, 180.0)
+_SEASONS = (1, 2)
+_YEAR_D = 365.25
+
+
+@dataclass
+class Choices:
+    """The settled choices, and a note of each that was not the observer's."""
+
+    site_of: dict[str, str] = field(default_factory=dict)
+    """Telescope's name to site's name."""
+    telescope_of: dict[str, TelescopeSection] = field(default_factory=dict)
+    """Stream's kind to telescope."""
+    cadences: dict[str, tuple[float, ...]] = field(default_factory=dict)
+    season_lengths: tuple[float, ...] = ()
+    seasons: tuple[int, ...] = ()
+    defaults: list[Default] = field(default_factory=list)
+
+    def take(self, key: str, value: str, reason: str = COMMON) -> None:
+        """Note a default."""
+        self.defaults.append(Default(key, value, reason))
+
+
+def stream_of(parts: Parts, kind: str) -> StreamSection | None:
+    """Return a stream's section by its kind."""
+    section: StreamSection | None = getattr(parts.streams, kind) if parts.streams else None
+    return section
+
+
+def settle(parts: Parts) -> Choices:
+    """Fill in what is open, as far as the sections that could be read allow."""
+    choices = Choices()
+    _settle_sites(parts, choices)
+    _settle_telescopes(parts, choices)
+    _settle_candidates(parts, choices)
+    if (
+        parts.time
+        and not parts.time.model_fields_set
+        and any(not t.time for t in parts.known_telescopes())
+    ):
+        choices.take("time", "every night, all night", "no allotment given")
+    return choices
+
+
+def _settle_sites(parts: Parts, choices: Choices) -> None:
+    sites = parts.known_sites()
+    for telescope in parts.known_telescopes():
+        if telescope.site is not None:
+            choices.site_of[telescope.name] = telescope.site
+        elif len(sites) == 1:
+            choices.site_of[telescope.name] = sites[0].name
+            choices.take(f"telescopes.{telescope.name}.site", sites[0].name, "the only site")
+
+
+def _settle_telescopes(parts: Parts, choices: Choices) -> None:
+    """Give the line the largest mirror and the continuum the smallest other one."""
+    by_size = sorted(parts.known_telescopes(), key=lambda t: t.aperture)
+    by_name = {t.name: t for t in by_size}
+    asked = {kind: section.telescope for kind in KINDS if (section := stream_of(parts, kind))}
+    chosen = {kind: by_name[name] for kind, name in asked.items() if name in by_name}
+    for kind, size in (("line", -1), ("continuum", 0)):
+        if asked.get(kind) is None and by_size and parts.streams:
+            others = [t for t in by_size if t not in chosen.values()] or by_size
+            chosen[kind] = others[size]
+            reason = "the larger mirror takes the line" if len(by_size) > 1 else "the only one"
+            choices.take(f"streams.{kind}.telescope", others[size].name, reason)
+    choices.telescope_of = chosen
+
+
+def _settle_candidates(parts: Parts, choices: Choices) -> None:
+    """Take the usual candidates that fit the campaign, where none are given."""
+    given, programme = parts.candidates, parts.programme
+    nights = programme.last_night - programme.first_night + 1 if programme else 7305
+    lengths = given.season_lengths if given else _SEASON_LENGTHS_D
+    if lengths is None:
+        lengths = tuple(d for d in _SEASON_LENGTHS_D if d <= nights) or (float(max(nights, 1)),)
+        choices.take("season_lengths", _listed(lengths, "d"))
+    seasons = given.seasons if given else _SEASONS
+    if seasons is None:
+        seasons = tuple(n for n in _SEASONS if (n - 1) * _YEAR_D + lengths[0] <= nights) or (1,)
+        choices.take("seasons", f"[{', '.join(map(str, seasons))}]")
+    choices.season_lengths, choices.seasons = lengths, seasons
+    for kind in KINDS:
+        section = stream_of(parts, kind)
+        if section is None:
+            continue
+        cadences = section.cadence
+        if cadences is None:
+            cadences = tuple(c for c in _CADENCES[kind] if c <= lengths[0]) or (1.0,)
+            choices.take(f"streams.{kind}.cadence", _listed(cadences, "d"))
+        choices.cadences[kind] = cadences
+
+
+def _listed(values: tuple[float, ...], unit: str) -> str:
+    return f"[{', '.join(f'{v:g} {unit}' for v in values)}]"
+
+
+def reference_for(
+    kind: str, aperture_m: float, section: StreamSection, choices: Choices
+) -> ReferenceSection:
+    """Return the stream's known case; where none is given, a usual one for that aperture.
+
+    Signal-to-noise grows as the mirror's diameter while photons set it. Starting points: 100 in
+    the band at V = 16 in 5 min on 0.5 m, and 30 per angstrom at V = 16 in 20 min on 2 m (common
+    practice, no source).
+    """
+    if section.signal_to_noise is not None:
+        return section.signal_to_noise
+    known, mirror_m, exposure, per = {
+        "continuum": (100.0, 0.5, "5 min", ""),
+        "line": (30.0, 2.0, "20 min", " per angstrom"),
+    }[kind]
+    value = f"{known * aperture_m / mirror_m:.3g}"
+    choices.take(
+        f"streams.{kind}.signal_to_noise",
+        f"{value}{per} at V = 16 in {exposure}, airmass 1.2, sky share 20 %",
+        f"scaled with the aperture; {COMMON}",
+    )
+    return ReferenceSection.model_validate(
+        {"value": value, "band": "V", "magnitude": "16", "exposure": exposure}
+    )

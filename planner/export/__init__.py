@@ -1,0 +1,30 @@
+"""Files that other programs read: ECSV and CSV tables, and the record of the run.
+
+In: a plan. Out: files in one folder, each written whole or not at all. Tables are astropy ECSV with
+units and descriptions, readable by ``astropy.table.QTable.read`` and by pandas; the schedule is
+also plain CSV. Times are UTC.
+"""
+
+from planner.export.run_record import run_json
+from planner.export.tables import (
+    lags_table,
+    recommendation_table,
+    schedule_table,
+    scores_table,
+    seasons_table,
+    windows_table,
+)
+from planner.export.write import as_rows, write_csv, write_ecsv
+
+__all__ = [
+    "as_rows",
+    "lags_table",
+    "recommendation_table",
+    "run_json",
+    "schedule_table",
+    "scores_table",
+    "seasons_table",
+    "windows_table",
+    "write_csv",
+    "write_ecsv",
+]

@@ -1,0 +1,260 @@
+"""The planner's result tables, one function each."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from typing import Any
+
+import numpy as np
+from astropy.table import Column, Table
+
+from planner.base.timescale import utc_text
+from planner.model.campaign import Campaign
+from planner.model.plan import Recommendation, SiteSky, Visit
+from planner.model.target import Forecast
+from planner.model.trial import Prospect, Score
+from planner.sky import airmass_of, moon_separation, positions_at
+
+__all__ = [
+    "lags_table",
+    "recommendation_table",
+    "schedule_table",
+    "scores_table",
+    "seasons_table",
+    "windows_table",
+]
+
+Spec = tuple[str, Any, str | None, str]
+"""Column name, values, unit, description."""
+
+
+def _table(columns: Sequence[Spec], **meta: Any) -> Table:
+    table = Table(meta=meta)
+    for name, values, unit, description in columns:
+        table[name] = Column(np.asarray(values), unit=unit, description=description)
+    return table
+
+
+def _rounded(values: Any, digits: int) -> Any:
+    return np.round(np.asarray(values, dtype=float), digits)
+
+
+def _dates(nights: Any) -> Any:
+    """Return the ISO dates of nights given as the MJD of their evening's date."""
+    return (np.datetime64("1858-11-17") + np.asarray(nights).astype("timedelta64[D]")).astype(str)
+
+
+def _significant(values: Any, digits: int = 3) -> Any:
+    return np.array([float(f"{v:.{digits}g}") for v in np.asarray(values, float)])
+
+
+def lags_table(forecasts: Sequence[Forecast]) -> Table:
+    """Return the expected lag, variability and mass of each target's line."""
+    f = forecasts
+    spread = np.array([10**x.lag_scatter_dex for x in f])
+    lag = np.array([x.lag_obs_d for x in f])
+    return _table(
+        [
+            ("target", [x.name for x in f], None, "name"),
+            ("line", [x.line for x in f], None, "broad emission line"),
+            ("lag_rest", _significant([x.lag_rest_d for x in f]), "d", "median, rest frame"),
+            ("lag_obs", _significant(lag), "d", "median, observed frame"),
+            ("lag_obs_lo", _significant(lag / spread), "d", "16th percentile, observed frame"),
+            ("lag_obs_hi", _significant(lag * spread), "d", "84th percentile, observed frame"),
+            ("relation", [x.relation for x in f], None, "radius-luminosity relation"),
+            ("outside_range", [x.outside_range for x in f], None,
+             "luminosity outside the range in which the relation was calibrated"),
+            ("log_luminosity", _rounded([x.log_luminosity for x in f], 2), "dex(erg s-1)",
+             "log10 of lambda L_lambda of the AGN"),
+            ("wavelength", [x.luminosity_wavelength_a for x in f], "Angstrom",
+             "rest wavelength of log_luminosity"),
+            ("amplitude", _significant([x.amplitude_mag for x in f], 2), "mag",
+             "median long-term rms of the AGN's light"),
+            ("timescale_obs", _significant([x.timescale_obs_d for x in f], 2), "d",
+             "median damping timescale, observed frame"),
+            ("log_mass", _rounded([x.log_mass for x in f], 2), "dex(solMass)", "expected mass"),
+            ("mass_dex", _rounded([x.mass_dex for x in f], 2), "dex",
+             "error of the mass to expect from the campaign"),
+        ]
+    )
+
+
+def windows_table(targets: Sequence[str], skies: dict[str, SiteSky]) -> Table:
+    """Return every window of every target, site by site."""
+    parts: dict[str, list[Any]] = {}
+    for site, sky in skies.items():
+        w, n = sky.windows, sky.nights
+        part = {
+            "target": np.asarray(targets, dtype=str)[w.target],
+            "site": np.full(w.target.size, site),
+            "night": _dates(n.night[w.night]),
+            "start_utc": utc_text(w.start_mjd),
+            "end_utc": utc_text(w.end_mjd),
+            "hours": _rounded((w.end_mjd - w.start_mjd) * 24, 3),
+            "airmass_min": _rounded(w.airmass_min, 3),
+            "moon_separation": _rounded(w.moon_separation_deg, 1),
+            "moon_illumination": _rounded(w.moon_illumination, 3),
+        }
+        for name, values in part.items():
+            parts.setdefault(name, []).append(values)
+    describe = {
+        "target": (None, "name"),
+        "site": (None, "site of the window"),
+        "night": (None, "local date of the evening"),
+        "start_utc": (None, "start, UTC"),
+        "end_utc": (None, "end, UTC"),
+        "hours": ("h", "length"),
+        "airmass_min": (None, "least airmass in the window"),
+        "moon_separation": ("deg", "distance of the moon at least airmass"),
+        "moon_illumination": (None, "illuminated fraction of the moon at least airmass"),
+    }
+    return _table(
+        [(name, np.concatenate(values), *describe[name]) for name, values in parts.items()]
+    )
+
+
+def seasons_table(campaign: Campaign, prospects: Sequence[Prospect]) -> Table:
+    """Return every visible season of every target, for the line stream's telescope."""
+    rows = [(p.forecast.name, s) for p in prospects for s in p.seasons]
+    first = campaign.first_night
+    return _table(
+        [
+            ("target", np.array([name for name, _ in rows], dtype=str), None, "name"),
+            ("first_night", _dates(np.array([first + s.first for _, s in rows], dtype=int)),
+             None, "local date of the first evening"),
+            ("last_night", _dates(np.array([first + s.last for _, s in rows], dtype=int)),
+             None, "local date of the last evening"),
+            ("nights", [s.nights for _, s in rows], None, "nights with a usable window"),
+            ("gap_after", [s.gap_after_nights for _, s in rows], "d",
+             "until the next season or the campaign's end"),
+        ]
+    )
+
+
+def scores_table(scores: Sequence[Score]) -> Table:
+    """Return what the trials say of every layout of every target."""
+    s = scores
+    layout = [x.layout for x in s]
+    return _table(
+        [
+            ("target", np.array([x.target for x in s], dtype=str), None, "name"),
+            ("cadence_line", [x.cadence_line_nights for x in layout], "d", "between spectra"),
+            ("cadence_continuum", [x.cadence_continuum_nights for x in layout], "d",
+             "between continuum epochs"),
+            ("season_length", [x.season_length_d for x in layout], "d", "of each season"),
+            ("seasons", [x.seasons for x in layout], None, "number of seasons"),
+            ("epochs_line", _rounded([x.epochs_line for x in s], 1), None, "mean over weather"),
+            ("epochs_continuum", _rounded([x.epochs_continuum for x in s], 1), None,
+             "mean over weather"),
+            ("success", _rounded([x.success for x in s], 4), None,
+             "share of trials with a right claim"),
+            ("success_lo", _rounded([x.success_lo for x in s], 4), None,
+             "lower end, 90 % confidence (Wilson)"),
+            ("success_hi", _rounded([x.success_hi for x in s], 4), None,
+             "upper end, 90 % confidence (Wilson)"),
+            ("false_claims", _rounded([x.false_claims for x in s], 4), None,
+             "share of trials with a wrong claim"),
+            ("false_claims_hi", _rounded([x.false_claims_hi for x in s], 4), None,
+             "upper end, 90 % confidence (Wilson)"),
+            ("hours", _rounded([x.hours for x in s], 2), "h", "clock hours, both streams"),
+            ("hours_line", _rounded([x.hours_line for x in s], 2), "h",
+             "clock hours, line stream"),
+            ("trials", [x.trials for x in s], None, "0: the layout cannot be scheduled"),
+            ("note", np.array([x.note for x in s], dtype=str), None, "what stands in the way"),
+        ]
+    )
+
+
+def recommendation_table(
+    recommendations: Sequence[Recommendation], executed: dict[str, Score]
+) -> Table:
+    """Return the advised layout of each target, alone and in the schedule of all targets."""
+    nan = float("nan")
+
+    def of(name: str, digits: int) -> Any:
+        return _rounded(
+            [nan if r.score is None else float(getattr(r.score, name)) for r in recommendations],
+            digits,
+        )
+
+    def layout(name: str) -> Any:
+        return np.array(
+            [
+                nan if r.score is None else float(getattr(r.score.layout, name))
+                for r in recommendations
+            ]
+        )
+
+    run = [executed.get(r.target) for r in recommendations]
+    return _table(
+        [
+            ("target", [r.target for r in recommendations], None, "name"),
+            ("decision", [r.decision for r in recommendations], None,
+             "observe: goal met; risky: goal missed, still scheduled; leave out: not scheduled"),
+            ("cadence_line", layout("cadence_line_nights"), "d", "between spectra"),
+            ("cadence_continuum", layout("cadence_continuum_nights"), "d",
+             "between continuum epochs"),
+            ("season_length", layout("season_length_d"), "d", "of each season"),
+            ("seasons", layout("seasons"), None, "number of seasons"),
+            ("success", of("success", 4), None, "share of trials with a right claim, target alone"),
+            ("success_lo", of("success_lo", 4), None, "lower end, 90 % confidence (Wilson)"),
+            ("success_hi", of("success_hi", 4), None, "upper end, 90 % confidence (Wilson)"),
+            ("false_claims", of("false_claims", 4), None, "share of trials with a wrong claim"),
+            ("hours", of("hours", 2), "h", "clock hours to expect, both streams"),
+            ("success_scheduled", _rounded([nan if s is None else s.success for s in run], 4), None,
+             "success on the nights that the schedule of all targets leaves under weather"),
+            ("success_scheduled_lo", _rounded([nan if s is None else s.success_lo for s in run], 4),
+             None, "lower end, 90 % confidence (Wilson)"),
+            ("epochs_line_scheduled",
+             _rounded([nan if s is None else s.epochs_line for s in run], 1), None,
+             "line epochs that the schedule leaves, mean over weather"),
+            ("why", [r.why for r in recommendations], None, "reason in words"),
+            ("helps", ["; ".join(
+                f"{h.change}: {h.success:.0%} ({h.gain:+.0%}, {h.hours:+.0f} h)" for h in r.helps
+            ) for r in recommendations], None, "changes tried where the goal is missed"),
+        ]
+    )
+
+
+def schedule_table(campaign: Campaign, visits: Sequence[Visit]) -> Table:
+    """Return every scheduled visit with where the telescope points and how the moon stands."""
+    where = {t.name: t for t in campaign.targets}
+    site = {t.name: t.site for t in campaign.telescopes}
+    start = np.array([v.start_mjd for v in visits])
+    end = np.array([v.end_mjd for v in visits])
+    sky = {name: np.full(len(visits), np.nan) for name in ("airmass", "moon", "angle")}
+    for place in campaign.sites:
+        rows = np.array([site[v.telescope] == place.name for v in visits], dtype=bool)
+        if rows.any():
+            here = [where[v.target] for v, mine in zip(visits, rows, strict=True) if mine]
+            ra = np.array([t.ra_deg for t in here])
+            dec = np.array([t.dec_deg for t in here])
+            middle = (start[rows] + end[rows]) / 2
+            pointing = positions_at(ra, dec, place, middle)
+            sky["airmass"][rows] = airmass_of(pointing.altitude_deg)
+            sky["moon"][rows] = moon_separation(ra, dec, place, middle)
+            sky["angle"][rows] = pointing.parallactic_angle_deg
+    text = [
+        (name, np.array([getattr(v, name) for v in visits], dtype=str), None, note)
+        for name, note in (
+            ("target", "name"),
+            ("stream", "line or continuum"),
+            ("telescope", "where it is taken"),
+        )
+    ]
+    nights = np.array([campaign.first_night + v.night for v in visits], dtype=int)
+    return _table(
+        [
+            ("night", _dates(nights), None, "local date of the evening"),
+            *text,
+            ("start_utc", utc_text(start), None, "start of slew, UTC"),
+            ("end_utc", utc_text(end), None, "end of read-out, UTC"),
+            ("exposure", [v.exposure_s for v in visits], "s", "shutter time"),
+            ("airmass", _rounded(sky["airmass"], 3), None, "at mid-visit"),
+            ("moon_separation", _rounded(sky["moon"], 1), "deg", "at mid-visit"),
+            ("parallactic_angle", _rounded(sky["angle"], 1), "deg", "at mid-visit"),
+        ],
+        note="Planned for clear skies: a visit lost to weather is taken on the next clear night. "
+        "A plan is no permission: the observatory's own limits, sun avoidance, safety rules and "
+        "staff decide.",
+    )

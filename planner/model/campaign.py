@@ -1,0 +1,110 @@
+"""The whole campaign as one record, and the layouts and rules it is judged by."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from planner.model.observatory import Limits, Site, Stream, Telescope
+from planner.model.target import Target
+
+__all__ = ["Campaign", "Cosmology", "Layout", "Simulation", "SuccessRule"]
+
+
+@dataclass(frozen=True, slots=True)
+class Cosmology:
+    """Flat LCDM."""
+
+    hubble_km_s_mpc: float = 70.0
+    omega_matter: float = 0.3
+
+
+@dataclass(frozen=True, slots=True)
+class SuccessRule:
+    """When a recovered lag is a claim, when a claim is right, and how often that must happen."""
+
+    goal: float
+    """Wanted chance of success, in (0, 1)."""
+    within: float
+    """A claim is right if it lies within this fraction of the true lag."""
+    error_below: float
+    """Quality cut: half-width of the 68 % interval over the lag."""
+    r_max_above: float
+    """Quality cut: peak of the correlation function."""
+    sigma_above: float
+    """Quality cut: lag over its lower error, against lags consistent with zero."""
+
+
+@dataclass(frozen=True, slots=True)
+class Simulation:
+    """How trials are drawn."""
+
+    trials: int
+    """Trials of each layout of each target."""
+    resamples: int
+    """Flux-randomised random subsets drawn for each recovered lag's error."""
+    responsivity: float
+    """Fractional change of the line flux per fractional change of the delayed continuum."""
+    response_width: tuple[float, float]
+    """Range of the top-hat response's full width over the lag, drawn uniformly; at most 2."""
+
+
+@dataclass(frozen=True, slots=True)
+class Layout:
+    """One candidate way to observe a target."""
+
+    cadence_line_nights: float
+    cadence_continuum_nights: float
+    season_length_d: float
+    seasons: int
+
+
+@dataclass(frozen=True, slots=True)
+class Campaign:
+    """Everything the planner needs to know."""
+
+    name: str
+    first_night: int
+    """MJD of the evening date."""
+    last_night: int
+    seed: int
+    targets: tuple[Target, ...]
+    sites: tuple[Site, ...]
+    telescopes: tuple[Telescope, ...]
+    continuum: Stream
+    line: Stream
+    limits: Limits
+    season_lengths_d: tuple[float, ...]
+    seasons: tuple[int, ...]
+    success: SuccessRule
+    simulation: Simulation
+    cosmology: Cosmology
+    relations: tuple[tuple[str, str], ...]
+    """(line, key of its radius-luminosity relation)."""
+
+    def telescope(self, name: str) -> Telescope:
+        """Return the telescope called `name`."""
+        return next(t for t in self.telescopes if t.name == name)
+
+    def site_of(self, stream: Stream) -> Site:
+        """Return the site of the telescope that takes `stream`."""
+        place = self.telescope(stream.telescope).site
+        return next(s for s in self.sites if s.name == place)
+
+    def layouts(self) -> tuple[Layout, ...]:
+        """Return every candidate layout: cadences x season lengths x numbers of seasons.
+
+        A continuum sampled more sparsely than the line is left out wherever a denser one is on
+        offer: the driver must be known between the line's epochs.
+        """
+        pairs = [
+            (line, cont)
+            for line in self.line.cadence_nights
+            for cont in self.continuum.cadence_nights
+            if cont <= line or cont == self.continuum.cadence_nights[0]
+        ]
+        return tuple(
+            Layout(line, cont, length, seasons)
+            for line, cont in pairs
+            for length in self.season_lengths_d
+            for seasons in self.seasons
+        )

@@ -1,0 +1,99 @@
+"""The results of planning: recommendations, visits and the whole plan."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Any
+
+from planner.model.campaign import Campaign
+from planner.model.sky import Nights, Windows
+from planner.model.target import Forecast
+from planner.model.trial import Prospect, Score, TrialTable
+
+__all__ = ["Help", "Plan", "Recommendation", "SiteSky", "Unplaced", "Visit"]
+
+
+@dataclass(frozen=True, slots=True)
+class SiteSky:
+    """Nights of one site and the windows of all targets in them."""
+
+    nights: Nights
+    windows: Windows
+
+
+@dataclass(frozen=True, slots=True)
+class Help:
+    """One change to a layout that misses the goal, and what it would bring."""
+
+    change: str
+    success: float
+    gain: float
+    """Paired: the same draws with and without the change."""
+    hours: float
+
+
+@dataclass(frozen=True, slots=True)
+class Recommendation:
+    """The layout advised for one target."""
+
+    target: str
+    decision: str
+    """``observe`` (goal met), ``risky`` (goal missed, still scheduled), ``leave out``."""
+    score: Score | None
+    """None: the target cannot be observed at all."""
+    why: str
+    helps: tuple[Help, ...]
+    """Largest gain first; empty where the goal is met."""
+
+    @property
+    def scheduled(self) -> bool:
+        """Whether the target takes part in the schedule."""
+        return self.decision in {"observe", "risky"}
+
+
+@dataclass(frozen=True, slots=True)
+class Visit:
+    """One scheduled visit."""
+
+    night: int
+    """Nights since the campaign's first."""
+    target: str
+    stream: str
+    telescope: str
+    start_mjd: float
+    end_mjd: float
+    """Slew, exposure and overhead included."""
+    exposure_s: float
+
+
+@dataclass(frozen=True, slots=True)
+class Unplaced:
+    """Visits of one target and stream that the schedule found no room for."""
+
+    target: str
+    stream: str
+    telescope: str
+    wanted: int
+    """Visits that the layout asks for."""
+    placed: int
+    reason: str
+
+
+@dataclass(frozen=True, slots=True)
+class Plan:
+    """Everything one run of the planner found out."""
+
+    campaign: Campaign
+    forecasts: tuple[Forecast, ...]
+    skies: dict[str, SiteSky]
+    """By site."""
+    prospects: tuple[Prospect, ...]
+    trials: tuple[TrialTable, ...]
+    scores: tuple[Score, ...]
+    recommendations: tuple[Recommendation, ...]
+    visits: tuple[Visit, ...]
+    unplaced: tuple[Unplaced, ...]
+    executed: dict[str, Score]
+    """By target: the schedule as the weather would let it happen."""
+    run: dict[str, Any]
+    """Provenance, as written to run.json."""

@@ -1,0 +1,88 @@
+"""Choosing a layout and saying why."""
+
+from __future__ import annotations
+
+from collections import Counter
+from collections.abc import Sequence
+
+import numpy as np
+
+from planner.model.campaign import SuccessRule
+from planner.model.plan import Help, Recommendation
+from planner.model.trial import Score, TrialTable
+from planner.scoring import REASONS
+
+__all__ = ["choose", "recommend"]
+
+HOPELESS = 0.25
+"""A target whose best layout stays below this share of the goal, with 90 % confidence, is left out
+of the schedule (our choice; the table says so)."""
+
+
+def choose(scores: Sequence[Score], rule: SuccessRule) -> tuple[Score | None, bool]:
+    """Return the advised layout's score and whether it reaches the goal.
+
+    The cheapest layout in clock hours whose success is at or above the goal with 90 % confidence;
+    if there is none, the one with the highest success, the cheaper of equals. None if nothing
+    could be tried.
+    """
+    tried = [s for s in scores if s.trials > 0]
+    if not tried:
+        return None, False
+    good = [s for s in tried if s.success_lo >= rule.goal]
+    if good:
+        return min(good, key=lambda s: (s.hours, -s.success)), True
+    return min(tried, key=lambda s: (-s.success, s.hours)), False
+
+
+def recommend(
+    target: str,
+    scores: Sequence[Score],
+    table: TrialTable,
+    rule: SuccessRule,
+    helps: Sequence[Help] = (),
+) -> Recommendation:
+    """Return the recommendation for one target, with the reason in words.
+
+    Parameters
+    ----------
+    target : str
+    scores : sequence of Score
+        One per layout, in the order of ``table.layouts``.
+    table : TrialTable
+    rule : SuccessRule
+    helps : sequence of Help
+        Changes tried on the best layout where the goal is missed.
+    """
+    best, reached = choose(scores, rule)
+    if best is None:
+        notes = sorted({s.note for s in scores})
+        return Recommendation(target, "leave out", None, "; ".join(notes) or "no layout", ())
+    if reached:
+        cheaper = sum(s.trials > 0 and s.hours < best.hours for s in scores)
+        why = (
+            f"cheapest layout with success of at least {rule.goal:.0%} at 90 % confidence; "
+            f"{cheaper} cheaper {'layout misses' if cheaper == 1 else 'layouts miss'} it"
+        )
+        return Recommendation(target, "observe", best, why, ())
+    ranked = tuple(sorted(helps, key=lambda h: (-h.gain, h.hours)))
+    why = f"no layout reaches the goal of {rule.goal:.0%}; this is the best; {_limits(table, best)}"
+    if best.note:
+        why += f"; {best.note}"
+    if ranked and ranked[0].gain > 0:
+        why += f"; what would help most: {ranked[0].change} (success {ranked[0].success:.0%})"
+    elif ranked:
+        why += "; none of the changes tried would help"
+    hopeless = best.success_hi < HOPELESS * rule.goal
+    return Recommendation(target, "leave out" if hopeless else "risky", best, why, ranked)
+
+
+def _limits(table: TrialTable, score: Score) -> str:
+    """Say what the failed trials failed of, commonest first."""
+    at = table.layouts.index(score.layout)
+    failed = Counter(int(r) for r in table.reason[at] if r > 0)
+    trials = int(np.size(table.reason[at]))
+    commonest = sorted(failed.items(), key=lambda item: (-item[1], item[0]))[:2]
+    return "trials fail of: " + ", ".join(
+        f"{REASONS[reason]} ({count / trials:.0%})" for reason, count in commonest
+    )

@@ -1,0 +1,162 @@
+"""The lag of a line behind its continuum, with an honest error, or the reason for none."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
+
+from planner.kernels.correlation import correlate, resampled_centroids
+from planner.recovery.correlation import CENTROID_THRESHOLD, centroid
+from planner.recovery.curve import Curve, tidy_pair
+from planner.recovery.search import minimum_overlap
+
+__all__ = ["LagResult", "recover_lag"]
+
+MIN_SHARE = 0.5
+"""Fewest resamples, as a share, that must give a lag: percentiles of a minority are no interval."""
+
+
+@dataclass(frozen=True, slots=True)
+class LagResult:
+    """What the correlation method makes of two light curves; lags in observed-frame days."""
+
+    lag_d: float
+    """Median of the resampled centroids; NaN where there is no lag."""
+    lag_lo_d: float
+    """Lower end of the central 68 % of the resampled centroids."""
+    lag_hi_d: float
+    """Upper end."""
+    centroid_d: float
+    """Centroid of the data's own correlation function."""
+    r_max: float
+    """Height of the data's own peak; NaN where no correlation is defined."""
+    peak_d: float
+    """Lag of that peak."""
+    share: float
+    """Share of the resamples that gave a lag."""
+    reason: str
+    """Why there is no lag; empty where there is one."""
+    lags_d: NDArray[np.float64]
+    """Trial lags, (k,)."""
+    r: NDArray[np.float64]
+    """The data's own correlation function, (k,)."""
+    centroids_d: NDArray[np.float64]
+    """Centroid of each resample that gave one."""
+
+
+def recover_lag(
+    t1_d: ArrayLike,
+    flux1: ArrayLike,
+    error1: ArrayLike,
+    t2_d: ArrayLike,
+    flux2: ArrayLike,
+    error2: ArrayLike,
+    lags_d: ArrayLike,
+    resamples: int,
+    rng: np.random.Generator,
+    min_points: int | None = None,
+) -> LagResult:
+    """Recover a lag by interpolated cross-correlation, its error by resampling.
+
+    Centroid of the correlation function over ``r >= 0.8 r_max``; errors from flux randomisation
+    and random subset selection (Peterson et al. 1998, PASP 110, 660; Peterson et al. 2004, ApJ
+    613, 682): each resample draws as many epochs of each curve as there are, with replacement,
+    keeps each distinct one once with its error reduced by the square root of the times it was
+    drawn (Welsh 1999, PASP 111, 1347), adds Gaussian errors, and takes the centroid.
+
+    Parameters
+    ----------
+    t1_d, flux1, error1 : array (n1,)
+        Continuum. Any order; epochs at one time are averaged, unusable ones left out.
+    t2_d, flux2, error2 : array (n2,)
+        Line.
+    lags_d : array (k,)
+        Trial lags, ascending, observed frame.
+    resamples : int
+        Resampled pairs of curves.
+    rng : numpy.random.Generator
+        Left untouched where the data themselves have no lag.
+    min_points : int or None
+        Fewest overlapping epochs in each direction; None: `minimum_overlap` of the curve with
+        fewer epochs.
+
+    Returns
+    -------
+    LagResult
+        Always; data that allow no lag give NaN and the reason.
+    """
+    one, two = tidy_pair(t1_d, flux1, error1, t2_d, flux2, error2)
+    if min_points is None:
+        min_points = minimum_overlap(min(one.t_d.size, two.t_d.size))
+    lags = np.array(lags_d, dtype=np.float64)
+    r = correlate(one.t_d, one.flux, two.t_d, two.flux, lags, min_points)
+    own = centroid(lags, r)
+    reason = _no_centroid(own)
+    if reason:
+        return _result(own, lags, r, np.empty(0), 0.0, reason)
+    drawn = _resampled(one, two, lags, resamples, rng, min_points)
+    centroids = drawn[np.isfinite(drawn)]
+    share = centroids.size / resamples if resamples else 0.0
+    if share < MIN_SHARE:
+        reason = f"only {100.0 * share:.0f} % of the resampled light curves gave a lag"
+    return _result(own, lags, r, centroids, share, reason)
+
+
+def _no_centroid(own: tuple[float, float, float, bool]) -> str:
+    """Return why a correlation function has no centroid, or nothing."""
+    _, r_max, _, at_edge = own
+    if np.isnan(r_max):
+        return "the light curves overlap in too few points, or do not vary, at every lag searched"
+    if r_max <= 0.0:
+        return "the light curves are nowhere positively correlated"
+    if at_edge:
+        return "the correlation peaks at the edge of the lags that can be searched"
+    return ""
+
+
+def _resampled(
+    one: Curve,
+    two: Curve,
+    lags: NDArray[np.float64],
+    resamples: int,
+    rng: np.random.Generator,
+    min_points: int,
+) -> NDArray[np.float64]:
+    """Return the centroid of each resample; NaN where it has none."""
+    deviates = []
+    for curve in (one, two):
+        n = curve.t_d.size
+        deviates += [rng.integers(0, n, (resamples, n)), rng.standard_normal((resamples, n))]
+    return np.asarray(
+        resampled_centroids(
+            one.t_d, one.flux, one.error, two.t_d, two.flux, two.error,
+            lags, min_points, CENTROID_THRESHOLD, *deviates,
+        )
+    )  # fmt: skip
+
+
+def _result(
+    own: tuple[float, float, float, bool],
+    lags: NDArray[np.float64],
+    r: NDArray[np.float64],
+    centroids: NDArray[np.float64],
+    share: float,
+    reason: str,
+) -> LagResult:
+    """Put the record together; percentiles as for one sigma of a Gaussian."""
+    lo, lag, hi = (np.nan,) * 3 if reason else np.percentile(centroids, [15.87, 50.0, 84.13])
+    return LagResult(
+        lag_d=float(lag),
+        lag_lo_d=float(lo),
+        lag_hi_d=float(hi),
+        centroid_d=own[0],
+        r_max=own[1],
+        peak_d=own[2],
+        share=share,
+        reason=reason,
+        lags_d=lags,
+        r=r,
+        centroids_d=centroids,
+    )

@@ -1,0 +1,81 @@
+"""The report: one self-contained HTML page."""
+
+from __future__ import annotations
+
+from base64 import b64encode
+from importlib.resources import files
+from typing import Any
+
+from planner.model.plan import Plan
+from planner.model.trial import Score
+
+__all__ = ["page"]
+
+
+def page(plan: Plan, figures: dict[str, bytes], defaults: list[tuple[str, str, str]]) -> bytes:
+    """Return the report as HTML.
+
+    Parameters
+    ----------
+    plan : Plan
+    figures : dict of str to PNG bytes
+        ``visibility <site>``, ``success <target>`` and ``example <target>``.
+    defaults : list of (key, value, reason)
+        Defaults taken in the campaign file.
+    """
+    import jinja2
+
+    environment = jinja2.Environment(autoescape=True, undefined=jinja2.StrictUndefined)
+    environment.filters["percent"] = lambda share: f"{100 * share:.0f} %"
+    environment.filters["sig2"] = lambda value: f"{float(f'{value:.2g}'):g}"
+    template = environment.from_string((files("planner.report") / "page.html").read_text("utf-8"))
+    images = {name: f"data:image/png;base64,{b64encode(b).decode()}" for name, b in figures.items()}
+    return template.render(
+        plan=plan,
+        cards=[_card(plan, i, images) for i in range(len(plan.recommendations))],
+        summary=_summary(plan),
+        visibility={
+            site: images[f"visibility {site}"] for site in plan.skies
+        },
+        defaults=defaults,
+    ).encode()
+
+
+def _card(plan: Plan, index: int, images: dict[str, str]) -> dict[str, Any]:
+    recommendation = plan.recommendations[index]
+    name = recommendation.target
+    return {
+        "name": name,
+        "forecast": plan.forecasts[index],
+        "spread": 10 ** plan.forecasts[index].lag_scatter_dex,
+        "advice": recommendation,
+        "executed": plan.executed.get(name),
+        "grid": images.get(f"success {name}"),
+        "example": images.get(f"example {name}"),
+    }
+
+
+def _summary(plan: Plan) -> list[str]:
+    """Answer the observer's first questions in sentences."""
+    kept = [r for r in plan.recommendations if r.scheduled]
+    met = sum(r.decision == "observe" for r in plan.recommendations)
+    total = len(plan.recommendations)
+    lags = sum(s.success for s in plan.executed.values())
+    wrong = sum(s.false_claims for s in plan.executed.values())
+    goal = plan.campaign.success.goal
+    sentences = [
+        f"{met} of {total} targets reach the goal of {goal:.0%} success on their own; "
+        f"{len(kept)} are scheduled.",
+    ]
+    if kept:
+        sentences += [
+            f"The schedule of all of them is expected to give {lags:.1f} right lags "
+            f"and {wrong:.1f} wrong ones.",
+            f"It takes about {_hours(plan.executed):.0f} clock hours in average weather; for clear "
+            f"skies throughout, {len(plan.visits)} visits are laid out.",
+        ]
+    return sentences
+
+
+def _hours(executed: dict[str, Score]) -> float:
+    return sum(s.hours for s in executed.values())

@@ -1,0 +1,44 @@
+"""One trial in full, to be looked at."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from planner.model.campaign import Layout
+from planner.model.trial import Prospect, TrialTable
+from planner.recovery import LagResult
+from planner.scoring.placing import place
+from planner.scoring.trials import REASONS, Curves, Setting, draw_trial, nights_used, observe, recover
+
+__all__ = ["Example", "example_of"]
+
+
+@dataclass(frozen=True, slots=True)
+class Example:
+    """One simulated campaign of one target."""
+
+    trial: int
+    lag_true_d: float
+    curves: Curves
+    result: LagResult | None
+    verdict: str
+    """``success``, or why not."""
+
+
+def example_of(
+    setting: Setting, prospect: Prospect, layout: Layout, table: TrialTable
+) -> Example:
+    """Return the first trial that came out the way most trials of the layout did."""
+    at = table.layouts.index(layout)
+    outcomes = table.reason[at]
+    commonest = np.bincount(outcomes).argmax()
+    trial = int(np.flatnonzero(outcomes == commonest)[0])
+    placing = place(layout, prospect.seasons, prospect.line)
+    draw = draw_trial(setting, prospect, trial)
+    taken = nights_used(prospect, layout, placing, draw.clear)
+    curves = observe(prospect, draw, *taken)
+    span = float(placing.last[-1] - placing.first[0])
+    result = recover(setting, prospect, curves, span, str(layout), trial)
+    return Example(trial, draw.lag_obs_d, curves, result, REASONS[commonest] or "success")

@@ -1,0 +1,141 @@
+from dataclasses import replace
+
+import numpy as np
+import pytest
+
+from planner.model.campaign import Layout
+from planner.recovery import LagResult
+from planner.scoring import REASONS, Job, Store, score_targets, scores_of, setting_of
+from planner.scoring.trials import draw_trial, judge, nights_used, run_trials, sky_of_trial
+
+LAYOUTS = (Layout(3, 1, 120, 1), Layout(6, 1, 60, 1))
+
+
+@pytest.fixture
+def setting(campaign):
+    return setting_of(campaign)
+
+
+def run(jobs, **options):
+    options = {"workers": 1, "store": Store(None), "progress": lambda *_: None} | options
+    return score_targets(jobs, label="trials", **options)
+
+
+def result(**values):
+    values = {
+        "lag_d": 10.0, "lag_lo_d": 9.0, "lag_hi_d": 11.0, "centroid_d": 10.0, "r_max": 0.9,
+        "peak_d": 10.0, "share": 1.0, "reason": "", "lags_d": np.zeros(1), "r": np.zeros(1),
+        "centroids_d": np.zeros(1),
+    } | values  # fmt: skip
+    return LagResult(**values)
+
+
+@pytest.mark.parametrize(
+    ("found", "truth", "claim", "success", "reason"),
+    [
+        (result(), 10.0, True, True, ""),
+        (result(), 13.0, True, True, ""),
+        (result(), 20.0, True, False, "claimed lag is wrong"),
+        (None, 10.0, False, False, "too few epochs"),
+        (result(lag_d=np.nan, lag_lo_d=np.nan, lag_hi_d=np.nan), 10.0, False, False,
+         "no peak inside the search range"),
+        (result(r_max=0.4), 10.0, False, False, "weak correlation"),
+        (result(lag_lo_d=2.0, lag_hi_d=18.0), 10.0, False, False, "error too large"),
+        (result(lag_lo_d=-1.0, lag_hi_d=10.5), 10.0, False, False, "consistent with zero lag"),
+        (result(lag_d=-5.0, lag_lo_d=-6.0, lag_hi_d=-4.0), 10.0, False, False,
+         "consistent with zero lag"),
+    ],
+)  # fmt: skip
+def test_claims_and_successes_are_kept_apart(campaign, found, truth, claim, success, reason):
+    verdict = judge(found, truth, campaign.success)
+    assert verdict == (claim, success, REASONS.index(reason))
+
+
+def test_the_same_draws_serve_every_layout(setting, prospect):
+    both = run_trials(setting, prospect, LAYOUTS, 0, 3)
+    alone = run_trials(setting, prospect, LAYOUTS[1:], 0, 3)
+    for name, column in alone.items():
+        assert np.array_equal(column[0], both[name][1], equal_nan=True), name
+    assert np.array_equal(both["lag_true_d"][0], both["lag_true_d"][1])
+
+
+def test_targets_share_the_weather_and_nothing_else(setting, prospect):
+    other = replace(prospect, forecast=replace(prospect.forecast, name="Two"))
+    a, b = draw_trial(setting, prospect, 4), draw_trial(setting, other, 4)
+    assert np.array_equal(a.clear["Ridge"], b.clear["Ridge"])
+    assert a.lag_obs_d != b.lag_obs_d
+    assert not np.array_equal(a.flux_line, b.flux_line)
+
+
+def test_a_longer_campaign_starts_with_the_same_weather(setting):
+    longer = replace(setting, nights=setting.nights + 365)
+    short = sky_of_trial(setting, 2)["Ridge"]
+    assert np.array_equal(sky_of_trial(longer, 2)["Ridge"][: short.size], short)
+
+
+def test_visits_are_made_on_clear_nights_only(setting, prospect):
+    draw = draw_trial(setting, prospect, 0)
+    from planner.scoring import place
+
+    placing = place(LAYOUTS[0], prospect.seasons, prospect.line)
+    for used, on_offer in zip(
+        nights_used(prospect, LAYOUTS[0], placing, draw.clear),
+        (prospect.continuum, prospect.line),
+        strict=True,
+    ):
+        assert used.any()
+        assert draw.clear["Ridge"][on_offer.night[used]].all()
+
+
+def test_drawn_lags_follow_the_forecast(setting, prospect):
+    lags = np.log10([draw_trial(setting, prospect, i).lag_obs_d for i in range(400)])
+    assert np.mean(lags) == pytest.approx(np.log10(12.24), abs=3 * 0.2 / 20)
+    assert np.std(lags) == pytest.approx(0.2, rel=3 / np.sqrt(800))
+
+
+def test_an_easy_target_succeeds_and_a_noisy_one_does_not(campaign, prospect):
+    setting = replace(
+        setting_of(campaign), simulation=replace(campaign.simulation, trials=20, resamples=40)
+    )
+    noisy = replace(
+        prospect, line=replace(prospect.line, flux_error=np.full(181, 1.0)),
+    )
+    good, bad = run([Job(setting, prospect, LAYOUTS[:1]), Job(setting, noisy, LAYOUTS[:1])])
+    assert scores_of(prospect, good)[0].success > 0.7
+    assert scores_of(noisy, bad)[0].success < 0.3
+
+
+def test_a_layout_that_cannot_be_is_said_and_not_tried(setting, prospect):
+    layout = Layout(3, 1, 60, 2)
+    table = run([Job(setting, prospect, (layout,))])[0]
+    score = scores_of(prospect, table)[0]
+    assert score.trials == 0
+    assert score.note == "the campaign holds one season of this target"
+    assert (score.success, score.hours) == (0, 0)
+
+
+def test_hours_are_visits_times_their_length(setting, prospect):
+    table = run([Job(setting, prospect, LAYOUTS)])[0]
+    for score in scores_of(prospect, table):
+        hours = score.epochs_line * 0.5 + score.epochs_continuum * 420 / 3600
+        assert score.hours == pytest.approx(hours)
+
+
+def test_kept_results_are_used_again(tmp_path, setting, prospect):
+    seen = []
+    store = Store(tmp_path / "kept")
+    first = run([Job(setting, prospect, LAYOUTS)], store=store)[0]
+    again = run(
+        [Job(setting, prospect, LAYOUTS)], store=store, progress=lambda *a: seen.append(a)
+    )[0]
+    assert seen == [("trials", 1, 1)]
+    assert np.array_equal(first.lag_d, again.lag_d, equal_nan=True)
+
+
+@pytest.mark.slow
+def test_two_workers_give_the_same_bytes(setting, prospect):
+    setting = replace(setting, simulation=replace(setting.simulation, trials=25))
+    one = run([Job(setting, prospect, LAYOUTS)], workers=1)[0]
+    two = run([Job(setting, prospect, LAYOUTS)], workers=2)[0]
+    for name in ("lag_d", "lag_lo_d", "r_max", "epochs_line", "claim", "reason"):
+        assert getattr(one, name).tobytes() == getattr(two, name).tobytes(), name
