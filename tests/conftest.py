@@ -2,13 +2,14 @@
 
 import os
 import socket
+import tempfile
 from dataclasses import replace
 
 import numpy as np
 import pytest
 
 os.environ.setdefault("OMP_NUM_THREADS", "1")
-os.environ["XDG_CONFIG_HOME"] = os.devnull
+os.environ["XDG_CONFIG_HOME"] = tempfile.mkdtemp()
 for name in ("NO_COLOR", "COLUMNS"):
     os.environ.pop(name, None)
 

@@ -11,7 +11,7 @@ import re
 import warnings
 from functools import lru_cache
 
-__all__ = ["in_unit", "plain_number", "split"]
+__all__ = ["in_unit", "plain_number", "shown", "split"]
 
 _NUMBER = re.compile(r"[+-]?(?:[0-9]+\.?[0-9]*|\.[0-9]+)(?:[eE][+-]?[0-9]+)?")
 _NOT_FINITE = re.compile(r"[+-]?\.?(?:nan|inf|infinity)\b", re.IGNORECASE)
@@ -108,10 +108,10 @@ def in_unit(text: str, unit: str, expected: str) -> float:
     return result
 
 
-def shown(text: str) -> str:
+def shown(text: str, longest: int = 60) -> str:
     """Return `text` short and on one line, fit for a message."""
     line = text.strip() if text.isprintable() else repr(text)[1:-1]
-    return f"{line[:60]}..." if len(line) > 60 else (line or "an empty text")
+    return f"{line[:longest]}..." if len(line) > longest else (line or "an empty text")
 
 
 @lru_cache(maxsize=512)

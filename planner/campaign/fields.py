@@ -219,7 +219,7 @@ _HEIGHT = "a height from -500 m to 9 km, such as 2300 m"
 Night = Annotated[int, BeforeValidator(_night)]
 """MJD of an evening date."""
 Name = Annotated[str, read_text(_name, "a name")]
-Text = Annotated[str, read_text(str.strip, "a text")]
+Text = Annotated[str, read_text(lambda text: _text(" ".join(text.split())), "a text")]
 TimeZone = Annotated[str, read_text(_time_zone, "a zone such as America/Santiago")]
 Percent = Annotated[float, read_text(percent, _PERCENT)]
 Elevation = Annotated[float, quantity("m", _HEIGHT, lambda v: -500 <= v <= 9000)]

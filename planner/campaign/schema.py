@@ -55,8 +55,8 @@ Cadences = Annotated[tuple[Cadence, ...], listed(_CADENCE), sorted_once]
 SeasonLength = Annotated[float, quantity("d", _SEASON, lambda v: 1 <= v <= 366)]
 Positive = Annotated[float, quantity("", "a percentage above 0, up to 100", lambda v: 0 < v <= 1)]
 Airmass = Annotated[float, number("an airmass from 1 to 10, such as 2.0", lambda v: 1 <= v <= 10)]
-BrightnessLimit = "a magnitude from 5 to 30, such as 16.2"
-MagnitudeValue = Annotated[float, number(BrightnessLimit, lambda v: 5 <= v <= 30, "mag")]
+BRIGHTNESS = "a magnitude from 5 to 30, such as 16.2"
+MagnitudeValue = Annotated[float, number(BRIGHTNESS, lambda v: 5 <= v <= 30, "mag")]
 Band = Annotated[str, choice(BANDS)]
 
 
@@ -178,7 +178,7 @@ class ReferenceSection(Section):
         float, number("a signal-to-noise above 0, such as 100", lambda v: 0 < v <= 1e5)
     ] = needed("the signal-to-noise reached, such as 100")
     band: Band = needed(f"one of {', '.join(BANDS)}")
-    magnitude: MagnitudeValue = needed(BrightnessLimit)
+    magnitude: MagnitudeValue = needed(BRIGHTNESS)
     exposure: Exposure = needed(_EXPOSURE)
     airmass: Airmass = usual("1.2")
     sky_share: Annotated[float, quantity("", _SHARE, lambda v: 0 <= v <= 0.99)] = usual("20 %")

@@ -37,16 +37,16 @@ class Sheet:
         if path and key in self.wrong:
             return
         self.wrong.add(key)
-        line = line_of(self.root, path)
-        self.problems.append(Problem(self.file, line, key, found, expected))
+        line, said = line_of(self.root, path), shown(found, 400)
+        self.problems.append(Problem(self.file, line, key, said, expected))
 
     def key(self, path: Place) -> str:
         """Return `path` as an observer names it: list positions count from 1."""
         if self.rows and path:
             row, *column = path
             return ", ".join([f"row {int(row) + 1}", "_".join(map(str, column))][: len(path)])
-        text = "".join(f"[{p + 1}]" if isinstance(p, int) else f".{p}" for p in path)
-        return text.removeprefix(".")
+        steps = [f"[{p + 1}]" if isinstance(p, int) else f".{shown(p)}" for p in path]
+        return "".join(steps).removeprefix(".")
 
     def unknown(self, path: Place, known: Sequence[str], kind: str = "key") -> None:
         """Note a key or name that is not among the known ones."""

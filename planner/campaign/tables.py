@@ -142,7 +142,7 @@ def read_csv(content: bytes) -> Table:
     """
     text = as_text(content)
     # A comment becomes an empty line, so that the reader's count of lines stays true.
-    lines = ["\n" if line.startswith("#") else line for line in text.splitlines(keepends=True)]
+    lines = ["\n" if line.startswith("#") else line for line in io.StringIO(text, newline="")]
     header = next((line for line in lines if line.strip()), "")
     separator = max(",;\t", key=header.count)
     reader = csv.reader(lines, delimiter=separator, skipinitialspace=True, strict=True)
@@ -180,18 +180,18 @@ def read_ecsv(content: bytes) -> Table:
     ValueError
         If the text is no such table.
     """
-    text = as_text(content)
+    lines = as_text(content).replace("\r\n", "\n").split("\n")
     with warnings.catch_warnings():
         warnings.simplefilter("ignore")  # remarks on units and dates that nobody can act on
         from astropy.table import Table as AstropyTable
 
         try:
-            table = AstropyTable.read(io.StringIO(text), format="ascii.ecsv")
+            table = AstropyTable.read(lines, format="ascii.ecsv")
         except Exception as error:  # noqa: BLE001 (the reader lets through what its parsers raise)
             raise ValueError(f"is no ECSV table ({_first_line(error)}); expected ECSV") from None
-    numbered = enumerate(text.splitlines(), start=1)
-    lines = [n for n, line in numbered if line.strip() and not line.startswith("#")][1:]
-    return _from_astropy(table, lines)
+    numbered = enumerate(lines, start=1)
+    rows = [n for n, line in numbered if line.strip() and not line.startswith("#")][1:]
+    return _from_astropy(table, rows)
 
 
 def read_votable(content: bytes) -> Table:

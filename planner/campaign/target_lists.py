@@ -61,7 +61,7 @@ def read_targets(campaign: Sheet, folder: Path) -> TargetList:
             table = _reader(kind)(content)
     except ValueError as error:
         found, _, expected = str(error).partition("; expected ")
-        campaign.fault(("targets",), f"{shown(str(path))}: {found}", expected)
+        campaign.fault(("targets",), f"{shown(str(path), 400)}: {found}", expected)
         return TargetList()
     sheet = Sheet(str(path), Node(None, None), campaign.problems, campaign.notes)
     place: Place = ()

@@ -19,7 +19,7 @@ from planner.campaign.fields import (
     quantity,
     read_text,
 )
-from planner.campaign.schema import LINES, Band, BrightnessLimit, MagnitudeValue
+from planner.campaign.schema import BRIGHTNESS, LINES, Band, MagnitudeValue
 from planner.campaign.sections import Section, needed, usual
 from planner.campaign.sheet import Sheet
 from planner.campaign.yaml_nodes import Place
@@ -64,7 +64,7 @@ class MagnitudeSection(Section):
     """``magnitude``: AGN and host together, as observed."""
 
     band: Band = needed("u g r i z (AB) or B V R (Vega)")
-    value: MagnitudeValue = needed(BrightnessLimit)
+    value: MagnitudeValue = needed(BRIGHTNESS)
 
 
 class VariabilitySection(Section):

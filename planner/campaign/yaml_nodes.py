@@ -14,11 +14,13 @@ from dataclasses import dataclass, field, replace
 import yaml
 
 from planner.base.errors import InputError, Problem
+from planner.base.quantities import shown
 
 __all__ = ["Node", "Place", "Value", "line_of", "node_at", "parse", "plain"]
 
 _DEEPEST = 40
 _MOST_ALIASED = 100_000
+_MOST_PROBLEMS = 1000
 _NULLS = frozenset({"", "~", "null", "Null", "NULL"})
 _LOADER = getattr(yaml, "CSafeLoader", yaml.SafeLoader)
 
@@ -71,7 +73,9 @@ class _Builder:
     anchors: dict[str, _Built | None] = field(default_factory=dict)
 
     def fault(self, line: int, key: str, found: str, expected: str) -> None:
-        self.problems.append(Problem(self.file, line, key, found, expected))
+        self.problems.append(Problem(self.file, line, shown(key) if key else "", found, expected))
+        if len(self.problems) >= _MOST_PROBLEMS:
+            raise InputError(self.problems)
 
     def stop(self, line: int, found: str, expected: str) -> None:
         self.fault(line, "", found, expected)
@@ -86,6 +90,8 @@ class _Builder:
                     self.stop(line, "a second document (`---`)", "one document in a file")
             case yaml.ScalarEvent():
                 self.refuse_tag(event, line)
+                if any("\ud800" <= c <= "\udfff" for c in event.value):
+                    self.stop(line, "half a character (\\ud800 to \\udfff)", "the character itself")
                 null = not event.style and event.value in _NULLS
                 self.place(_Built(Node(line, None if null else event.value)), event.anchor)
             case yaml.MappingStartEvent() | yaml.SequenceStartEvent():

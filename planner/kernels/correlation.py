@@ -1,7 +1,7 @@
 """Interpolated cross-correlation, its centroid, and the centroids of resampled curves.
 
-Every time array is strictly ascending; every lag grid is ascending, of any spacing. A positive
-lag means that curve 2 repeats curve 1 later.
+Every time array is strictly ascending; every lag grid is ascending and evenly
+spaced. A positive lag means that curve 2 repeats curve 1 later.
 """
 
 import numpy as np
@@ -23,24 +23,68 @@ Ints = NDArray[np.int64]
 
 
 @njit(cache=True, nogil=True)
-def interpolate(q: Floats, t: Floats, f: Floats, slope: Floats, start: int, x: Floats) -> int:
-    """Interpolate a curve at ascending times `q` inside it, into `x`, by walking its segments.
+def interpolate(
+    q: Floats,
+    first: int,
+    end: int,
+    per_step: float,
+    t: Floats,
+    f: Floats,
+    slope: Floats,
+    start: int,
+    stops: Ints,
+    x: Floats,
+) -> int:
+    """Interpolate a curve at ``q[first:end]``, into ``x[first:end]``, segment by segment.
 
-    `start` is a guess at the first segment wanted; the right one is returned. `slope` holds the
-    slope of each segment. All float64; `t` strictly ascending, at least two points.
+    The lags of one segment are few and of unforeseeable number, and mispredicted branches would
+    cost more than the arithmetic. So each segment writes whole blocks of eight, and the next one
+    overwrites what was too much.
+
+    Parameters
+    ----------
+    q, x : float64 (k + 8,)
+        Evenly spaced times, and result; eight more than the lags, as room for the last block.
+    first, end : int
+        ``q[first]`` to ``q[end - 1]`` lie inside the curve.
+    per_step : float
+        One over the spacing of `q`.
+    t, f : float64 (m,)
+        The curve, strictly ascending in time, m >= 2.
+    slope : float64 (m - 1,)
+        Slope of each segment.
+    start : int
+        Guess at the segment of ``q[first]``.
+    stops : int64 (m - 1,)
+        Scratch: the first lag beyond each segment.
+
+    Returns
+    -------
+    int
+        The segment of ``q[first]``.
     """
-    while start > 0 and t[start] > q[0]:
+    while start > 0 and t[start] > q[first]:
         start -= 1
-    while t[start + 1] < q[0]:
+    while t[start + 1] < q[first]:
         start += 1
-    one = np.uintp(1)  # unsigned indices spare a test for negative ones: 30 % faster
-    s = np.uintp(start)
-    stop, t_s, f_s, slope_s = t[s + one], t[s], f[s], slope[s]
-    for k in range(q.size):
-        while q[k] > stop:
-            s += one
-            stop, t_s, f_s, slope_s = t[s + one], t[s], f[s], slope[s]
-        x[k] = f_s + slope_s * (q[k] - t_s)
+    q_0 = q[0]
+    for s in range(stops.size):
+        stops[s] = int((t[s + 1] - q_0) * per_step) + 1
+    stops[stops.size - 1] = end
+    block = np.uintp(8)  # unsigned indices spare a test for negative ones: 30 % faster
+    k = np.uintp(first)
+    for s in range(np.uintp(start), np.uintp(stops.size)):
+        stop = np.uintp(min(stops[s], end))
+        t_s, f_s, slope_s = t[s], f[s], slope[s]
+        while True:
+            for c in range(block):
+                x[k + c] = f_s + slope_s * (q[k + c] - t_s)
+            k += block
+            if k >= stop:
+                break
+        k = stop
+        if k >= end:
+            break
     return start
 
 
@@ -63,7 +107,7 @@ def one_way(
     t_of, f_of : float64 (m,)
         Curve that is interpolated; strictly ascending.
     lags : float64 (k,)
-        Ascending.
+        Ascending, evenly spaced.
     min_points : int
         Fewest epochs of `at` inside `of` for a correlation.
 
@@ -73,14 +117,16 @@ def one_way(
         r; NaN where too few points overlap or a curve is constant over them, see `pearson`.
     """
     n, last = lags.size, t_of.size - 1
-    if last < 1 or t_at.size < min_points:
+    if n < 1 or last < 1 or t_at.size < min_points:
         return np.full(n, np.nan)
     y = f_at - np.mean(f_at)
     slope = np.empty(last)
     for s in range(last):
         slope[s] = (f_of[s + 1] - f_of[s]) / (t_of[s + 1] - t_of[s])
+    per_step = (n - 1) / (lags[n - 1] - lags[0]) if n > 1 else 1.0
+    stops = np.empty(last, np.int64)
     enters, leaves = np.full(n, y.size), np.full(n, y.size)
-    q, x, x0, y0 = np.empty(n), np.empty(n), np.empty(n), np.empty(n)
+    q, x, x0, y0 = np.zeros(n + 8), np.zeros(n + 8), np.empty(n), np.empty(n)
     sum_x, sum_xx, sum_xy = np.zeros(n), np.zeros(n), np.zeros(n)
     first, end, reached, start = n, n, n, 0
     for i in range(y.size):
@@ -95,7 +141,7 @@ def one_way(
             continue
         for k in range(n):
             q[k] = t + lags[k]
-        start = interpolate(q[first:end], t_of, f_of, slope, start, x[first:end])
+        start = interpolate(q, first, end, per_step, t_of, f_of, slope, start, stops, x)
         for k in range(first, min(end, reached)):
             x0[k], y0[k] = x[k], y_i
         reached = first

@@ -8,7 +8,7 @@ from numpy.typing import ArrayLike, NDArray
 from planner.kernels.correlation import correlate, peak_centroid
 from planner.recovery.curve import tidy_pair
 
-__all__ = ["CENTROID_THRESHOLD", "MIN_POINTS", "centroid", "correlation"]
+__all__ = ["CENTROID_THRESHOLD", "MIN_POINTS", "centroid", "correlation", "even_lags"]
 
 CENTROID_THRESHOLD = 0.8
 """Share of the peak above which the centroid is taken (Peterson et al. 2004, ApJ 613, 682)."""
@@ -41,7 +41,7 @@ def correlation(
     t2_d, flux2 : array (n2,)
         Following curve (line). A positive lag means that it repeats curve 1 later.
     lags_d : array (k,)
-        Trial lags, ascending.
+        Trial lags, ascending, evenly spaced.
     min_points : int
         Fewest overlapping epochs in each direction.
 
@@ -50,10 +50,24 @@ def correlation(
     array (k,)
         NaN where either direction has too few points or a curve does not vary over them: the
         two directions are never mixed with a single one, which would put steps into the function.
+
+    Raises
+    ------
+    ValueError
+        If the lags are not ascending and evenly spaced.
     """
     one, two = tidy_pair(t1_d, flux1, 0.0, t2_d, flux2, 0.0)
-    lags = np.array(lags_d, dtype=np.float64)
+    lags = even_lags(lags_d)
     return np.asarray(correlate(one.t_d, one.flux, two.t_d, two.flux, lags, min_points))
+
+
+def even_lags(lags_d: ArrayLike) -> NDArray[np.float64]:
+    """Return trial lags as the kernels want them. ValueError unless ascending, evenly spaced."""
+    lags = np.array(lags_d, dtype=np.float64)
+    steps = np.diff(lags)
+    if steps.size and not (steps[0] > 0.0 and np.ptp(steps) <= 1e-6 * steps[0]):
+        raise ValueError("the trial lags must be ascending and evenly spaced")
+    return lags
 
 
 def centroid(

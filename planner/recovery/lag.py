@@ -8,7 +8,7 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from planner.kernels.correlation import correlate, resampled_centroids
-from planner.recovery.correlation import CENTROID_THRESHOLD, centroid
+from planner.recovery.correlation import CENTROID_THRESHOLD, centroid, even_lags
 from planner.recovery.curve import Curve, tidy_pair
 from planner.recovery.search import minimum_overlap
 
@@ -73,7 +73,7 @@ def recover_lag(
     t2_d, flux2, error2 : array (n2,)
         Line.
     lags_d : array (k,)
-        Trial lags, ascending, observed frame.
+        Trial lags, ascending, evenly spaced, observed frame.
     resamples : int
         Resampled pairs of curves.
     rng : numpy.random.Generator
@@ -86,11 +86,16 @@ def recover_lag(
     -------
     LagResult
         Always; data that allow no lag give NaN and the reason.
+
+    Raises
+    ------
+    ValueError
+        If the lags are not ascending and evenly spaced.
     """
     one, two = tidy_pair(t1_d, flux1, error1, t2_d, flux2, error2)
     if min_points is None:
         min_points = minimum_overlap(min(one.t_d.size, two.t_d.size))
-    lags = np.array(lags_d, dtype=np.float64)
+    lags = even_lags(lags_d)
     r = correlate(one.t_d, one.flux, two.t_d, two.flux, lags, min_points)
     own = centroid(lags, r)
     reason = _no_centroid(own)

@@ -127,8 +127,8 @@ CASES = {
         "targets[1].priority", "out of range"),
     "target twice": ("Corran 2", "corran 1", 12, "targets[2].name",
         "a second target called corran 1, the first is on line 7"),
-    "telescope twice": ("  - {name: C05", "  - {name: C19, aperture: 1 m}\n  - {name: C05", 26, "telescopes[2].name",
-        "a second telescope called C19"),
+    "telescope twice": ("  - {name: C05", "  - {name: C19, aperture: 1 m}\n  - {name: C05", 26,
+        "telescopes[2].name", "a second telescope called C19"),
     "unknown telescope": ("telescope: C19", "telescope: C18", 29, "streams.line.telescope",
         "unknown telescope `C18`; did you mean `C19`?"),
     "unknown site": ("C05, site: Corran Ridge", "C05, site: Coran Ridge", 26,
@@ -251,6 +251,7 @@ def test_missing_sections(file, section, words):
         (b"\x89PNG\r\n\x1a\n\0\0\0\rIHDR", "is a binary file"),
         (b"campaign: caf\xe9\n", "is not UTF-8 text (see line 1)"),
         ("campaign: 1\n".encode("utf-16"), "is written in UTF-16"),
+        (b'campaign: "\\ud800"\n', "campaign.yaml:1:"),
         (b"campaign: \x07\n", "a character that is not allowed"),
         (b"just words\n", "no sections"),
         (b"- a\n- b\n", "no sections"),
@@ -275,6 +276,14 @@ def test_alias_bombs_are_refused_before_they_unfold(file):
     file.write_text("\n".join(chain))
     (problem,) = problems_of(file)
     assert problem.found == "lists or sections nested too deep"
+
+
+def test_problems_stay_on_one_line_and_come_to_an_end(file):
+    file.write_text(GOOD + '"two\\nlines": 1\n')
+    (problem,) = problems_of(file)
+    assert problem.key == r"two\nlines"
+    file.write_text("x: 1\n" * 100_000)
+    assert len(problems_of(file)) == 1000
 
 
 def test_files_that_cannot_be_read(tmp_path, file, monkeypatch):

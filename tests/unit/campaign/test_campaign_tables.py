@@ -198,6 +198,8 @@ BAD = {
         "unknown column `xq`; expected columns among name, ra, dec"),
     "two columns for one": (SHORT.replace("dec,", "dec,z,").replace("28,", "28,0.1,"),
         "two columns for redshift: z and redshift"),
+    "line break in a header": ('"a\nb",' + SHORT.replace("A,", "1,A,"),
+        "unknown column `a\\nb`"),
     "short row": (SHORT + "B,12:30:45\n", "line 3 has 2 cells; expected 5 as in the header"),
     "open quote": (SHORT + '"B,1\n', "cannot be read"),
     "twice": (SHORT + SHORT.splitlines()[1], "list.csv:3: row 2, name: a second target called A"),

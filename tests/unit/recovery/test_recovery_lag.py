@@ -154,3 +154,16 @@ def test_good_campaigns_recover_the_lag_and_the_interval_is_not_too_short():
     assert np.nanmedian(ratios) == pytest.approx(1.0, abs=0.05)
     assert np.mean(np.abs(np.array(ratios) - 1.0) < 0.3) > 0.9
     assert held / trials > 0.68 - 3 * np.sqrt(0.68 * 0.32 / trials)
+
+
+@pytest.mark.parametrize("lags", [[0.0, 1.0, 3.0], [2.0, 1.0, 0.0], [1.0, 1.0, 1.0], [0.0, np.nan]])
+def test_uneven_trial_lags_are_refused(lags):
+    t, f1, f2 = pair()
+    with pytest.raises(ValueError, match="trial lags must be ascending and evenly spaced"):
+        recover(t, f1, 0.02, t, f2, 0.02, lags=lags)
+
+
+def test_too_short_a_search_gives_a_reason():
+    t, f1, f2 = pair()
+    assert recover(t, f1, 0.02, t, f2, 0.02, lags=[6.0]).reason == EDGE
+    assert recover(t, f1, 0.02, t, f2, 0.02, lags=[]).reason == FEW
