@@ -6,7 +6,16 @@ read how, and the files. Anything wrong ends in one `InputError` with every prob
 """
 
 from planner.campaign.describe import as_dict, describe
+from planner.campaign.light_curve import LightCurve, read_light_curve
 from planner.campaign.read import Reading, read_campaign
 from planner.campaign.sections import Default
 
-__all__ = ["Default", "Reading", "as_dict", "describe", "read_campaign"]
+__all__ = [
+    "Default",
+    "LightCurve",
+    "Reading",
+    "as_dict",
+    "describe",
+    "read_campaign",
+    "read_light_curve",
+]

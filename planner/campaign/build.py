@@ -148,11 +148,11 @@ def _simulation(section: SimulationSection) -> Simulation:
 def _relations(
     parts: Parts, choices: Choices, allowed: Mapping[str, Sequence[str]] | None
 ) -> tuple[tuple[str, str], ...]:
-    """Return the relation of every line; ``""`` where nobody has named one."""
+    """Return the relation named for every line; ``""`` where the target may decide."""
     pairs = []
     for line in LINES:
         usual = next(iter((allowed or {}).get(line, ())), "")
         if line not in parts.relations and usual:
-            choices.take(f"relations.{line}", usual, "the planner's first choice")
-        pairs.append((line, parts.relations.get(line, usual)))
+            choices.take(f"relations.{line}", usual, "the first of the planner's relations for this line")
+        pairs.append((line, parts.relations.get(line, "")))
     return tuple(pairs)

@@ -59,5 +59,5 @@ class ProgressLine:
         elif done == total:
             sys.stderr.write(f"{what}: {total}/{total} in {seconds:.0f} s\n")
         elif first:
-            sys.stderr.write(f"{what}: {done}/{total}, first use compiles for some seconds\n")
+            sys.stderr.write(f"{what}: {done}/{total}\n")
         sys.stderr.flush()

@@ -9,7 +9,7 @@ from planner.recovery.correlation import centroid, correlation
 from planner.recovery.cuts import is_claim, is_right, passes_cuts
 from planner.recovery.lag import LagResult, recover_lag
 from planner.recovery.likelihood import drw_log_likelihood
-from planner.recovery.search import lag_grid, minimum_overlap, search_grid, search_range
+from planner.recovery.search import lag_grid, minimum_overlap, search_range
 
 __all__ = [
     "LagResult",
@@ -22,6 +22,5 @@ __all__ = [
     "minimum_overlap",
     "passes_cuts",
     "recover_lag",
-    "search_grid",
     "search_range",
 ]

@@ -18,7 +18,6 @@ from planner.recovery import (
     is_claim,
     is_right,
     lag_grid,
-    minimum_overlap,
     recover_lag,
     search_range,
 )
@@ -58,7 +57,7 @@ FEWEST_EPOCHS = 5
 """Below this many epochs in a stream no lag is looked for (common practice, no source)."""
 
 SEARCH_SIGMAS = 2.5
-"""The search for a lag ends so many standard deviations of its prior above the median."""
+"""Lags up to so many standard deviations of the prior above its median are looked for."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -219,7 +218,7 @@ def recover(
     forecast = prospect.forecast
     longest = forecast.lag_obs_d * 10 ** (SEARCH_SIGMAS * forecast.lag_scatter_dex)
     sampling = float(np.median(np.diff(curves.t_continuum)))
-    lags = lag_grid(*search_range(span_d, longest), sampling)
+    lags = lag_grid(*search_range(span_d, longest, forecast.timescale_obs_d), sampling)
     return recover_lag(
         curves.t_continuum,
         curves.f_continuum,
@@ -230,7 +229,6 @@ def recover(
         lags,
         setting.simulation.resamples,
         stream(setting.seed, "resampling", forecast.name, label, trial),
-        minimum_overlap(curves.t_line.size),
     )
 
 
