@@ -93,7 +93,7 @@ def observe_sky(campaign: Campaign) -> dict[str, SiteSky]:
 def prospects_of(
     campaign: Campaign, forecasts: Sequence[Forecast], skies: dict[str, SiteSky]
 ) -> tuple[Prospect, ...]:
-    """Return each target as its trials see it; `forecasts` in the order of the campaign's targets."""
+    """Return each target as its trials see it; `forecasts` in the order of the targets."""
     return tuple(
         prospect_of(campaign, index, expected, skies) for index, expected in enumerate(forecasts)
     )
@@ -189,7 +189,7 @@ def execute(
     used: dict[tuple[str, str], list[Any]] = {(r.target, r.stream): [] for r in requests}
     for trial in range(setting.simulation.trials):
         clear = sky_of_trial(setting, trial)
-        visits = assign(campaign, requests, lambda site, night, clear=clear: bool(clear[site][night]))  # type: ignore[misc]
+        visits = assign(campaign, requests, clear)
         for request, nights in zip(requests, used_nights(requests, visits), strict=True):
             used[request.target, request.stream].append(nights)
         progress("weather over the schedule", trial + 1, setting.simulation.trials)
@@ -210,7 +210,11 @@ def execute(
 
 
 def make_plan(
-    reading: Reading, *, workers: int = 1, store: Store | None = None, progress: Progress | None = None
+    reading: Reading,
+    *,
+    workers: int = 1,
+    store: Store | None = None,
+    progress: Progress | None = None,
 ) -> Plan:
     """Do the main job.
 
@@ -237,9 +241,7 @@ def make_plan(
     prospects = prospects_of(campaign, forecasts, skies)
     if not any(p.seasons for p in prospects):
         raise PlanError(no_window(campaign))
-    tables, scores = score_all(
-        campaign, prospects, workers=workers, store=store, progress=progress
-    )
+    tables, scores = score_all(campaign, prospects, workers=workers, store=store, progress=progress)
     advice = recommend_all(
         campaign, forecasts, tables, scores, workers=workers, store=store, progress=progress
     )
@@ -284,7 +286,6 @@ def run_record(reading: Reading) -> dict[str, Any]:
         "versions": versions(),
         "time_note": UT1_NOTE,
     }
-
 
 
 def write_plan(plan: Plan, reading: Reading, folder: Path) -> None:

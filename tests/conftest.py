@@ -78,7 +78,11 @@ def campaign(site):
         ),
         continuum=Stream("continuum", "Small", (1.0,), 300.0, 60.0, instrument),
         line=Stream(
-            "line", "Big", (3.0, 6.0), 1200.0, 300.0,
+            "line",
+            "Big",
+            (3.0, 6.0),
+            1200.0,
+            300.0,
             replace(instrument, signal_to_noise=30.0, floor=0.02),
         ),
         limits=Limits(2.0, -18.0, 30.0),
@@ -94,11 +98,24 @@ def campaign(site):
 @pytest.fixture(scope="session")
 def forecast():
     return Forecast(
-        name="One", line="Hbeta", relation="given", log_luminosity=43.2,
-        luminosity_wavelength_a=5100, lag_rest_d=12.0, lag_obs_d=12.24, lag_scatter_dex=0.2,
-        amplitude_mag=0.2, amplitude_scatter_dex=0.2, timescale_obs_d=150.0,
-        timescale_scatter_dex=0.35, agn_fraction=0.6, log_mass=7.3, mass_dex=0.4,
-        line_width_km_s=3000.0, line_equivalent_width_a=80.0, outside_range=False,
+        name="One",
+        line="Hbeta",
+        relation="given",
+        log_luminosity=43.2,
+        luminosity_wavelength_a=5100,
+        lag_rest_d=12.0,
+        lag_obs_d=12.24,
+        lag_scatter_dex=0.2,
+        amplitude_mag=0.2,
+        amplitude_scatter_dex=0.2,
+        timescale_obs_d=150.0,
+        timescale_scatter_dex=0.35,
+        agn_fraction=0.6,
+        log_mass=7.3,
+        mass_dex=0.4,
+        line_width_km_s=3000.0,
+        line_equivalent_width_a=80.0,
+        outside_range=False,
     )
 
 
@@ -128,6 +145,8 @@ def nights():
 def prospect(forecast, nights):
     """One target visible on every night of half a year."""
     return Prospect(
-        forecast, nights(181), nights(181, error=0.01, visit_s=420.0),
+        forecast,
+        nights(181),
+        nights(181, error=0.01, visit_s=420.0),
         (Season(0, 0, 180, 181, 0),),
     )

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import os
 from collections.abc import Iterator
-from contextlib import contextmanager
+from contextlib import contextmanager, suppress
 from pathlib import Path
 
 from planner.base.errors import OutputError
@@ -33,10 +33,8 @@ def replacing(path: Path) -> Iterator[Path]:
         reason = error.strerror or str(error)
         raise OutputError(f"{path}: cannot be written: {reason}") from error
     finally:
-        try:
+        with suppress(OSError):
             temporary.unlink(missing_ok=True)
-        except OSError:
-            pass
 
 
 def write_bytes(path: Path, content: bytes) -> None:

@@ -1,4 +1,4 @@
-"""Named random streams: the same file and seed give the same draws, in any order, on any machine."""
+"""Named random streams: the same file and seed give the same draws, in any order."""
 
 from __future__ import annotations
 

@@ -153,6 +153,8 @@ def _relations(
     for line in LINES:
         usual = next(iter((allowed or {}).get(line, ())), "")
         if line not in parts.relations and usual:
-            choices.take(f"relations.{line}", usual, "the first of the planner's relations for this line")
+            choices.take(
+                f"relations.{line}", usual, "the first of the planner's relations for this line"
+            )
         pairs.append((line, parts.relations.get(line, "")))
     return tuple(pairs)

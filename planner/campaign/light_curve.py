@@ -11,7 +11,7 @@ from numpy.typing import NDArray
 
 from planner.base.errors import InputError, Problem
 from planner.campaign.input_files import read_bytes
-from planner.campaign.tables import Table, read_csv, read_ecsv
+from planner.campaign.tables import read_csv, read_ecsv
 
 __all__ = ["LightCurve", "read_light_curve"]
 
@@ -48,7 +48,10 @@ def read_light_curve(path: Path) -> LightCurve:
     problems: list[Problem] = []
     values = np.array(
         [
-            [_number(path, line, name, row[table.columns.index(name)], problems) for name in COLUMNS]
+            [
+                _number(path, line, name, row[table.columns.index(name)], problems)
+                for name in COLUMNS
+            ]
             for row, line in zip(table.rows, table.lines, strict=True)
         ]
     ).reshape(-1, len(COLUMNS))

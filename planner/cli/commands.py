@@ -88,16 +88,35 @@ def lags(options: Namespace) -> int:
     rows = []
     for f in forecasts:
         spread = 10**f.lag_scatter_dex
-        rows.append([
-            f.name, f.line, significant(f.lag_rest_d), significant(f.lag_obs_d),
-            f"{significant(f.lag_obs_d / spread)}–{significant(f.lag_obs_d * spread)}",
-            f.relation + (" (outside its range)" if f.outside_range else ""),
-            f"{f.log_luminosity:.2f}", f"{f.log_mass:.1f}", f"{f.mass_dex:.2f}",
-        ])
-    _say(table_text(
-        ["target", "line", "lag rest [d]", "lag observed [d]", "68 % range [d]", "relation",
-         "log L [erg/s]", "log mass [suns]", "mass error [dex]"], rows,
-    ))
+        rows.append(
+            [
+                f.name,
+                f.line,
+                significant(f.lag_rest_d),
+                significant(f.lag_obs_d),
+                f"{significant(f.lag_obs_d / spread)}–{significant(f.lag_obs_d * spread)}",
+                f.relation + (" (outside its range)" if f.outside_range else ""),
+                f"{f.log_luminosity:.2f}",
+                f"{f.log_mass:.1f}",
+                f"{f.mass_dex:.2f}",
+            ]
+        )
+    _say(
+        table_text(
+            [
+                "target",
+                "line",
+                "lag rest [d]",
+                "lag observed [d]",
+                "68 % range [d]",
+                "relation",
+                "log L [erg/s]",
+                "log mass [suns]",
+                "mass error [dex]",
+            ],
+            rows,
+        )
+    )
     return 0
 
 
@@ -127,17 +146,33 @@ def nights(options: Namespace) -> int:
             dates = campaign.first_night + p.line.night[inside]
             hours = (p.line.window_end_mjd - p.line.window_start_mjd)[inside] * 24
             first, last = (date_of_night(campaign.first_night + n) for n in (s.first, s.last))
-            rows.append([
-                p.forecast.name, first, last, str(s.nights),
-                f"{expected_clear(climate, dates).sum():.0f}", f"{hours.mean():.1f}",
-                str(s.gap_after_nights),
-            ])
+            rows.append(
+                [
+                    p.forecast.name,
+                    first,
+                    last,
+                    str(s.nights),
+                    f"{expected_clear(climate, dates).sum():.0f}",
+                    f"{hours.mean():.1f}",
+                    str(s.gap_after_nights),
+                ]
+            )
         if not p.seasons:
             rows.append([p.forecast.name, "–", "–", "0", "0", "–", "–"])
-    _say(table_text(
-        ["target", "first night", "last night", "nights", "clear nights", "hours a night",
-         "gap after [d]"], rows,
-    ))
+    _say(
+        table_text(
+            [
+                "target",
+                "first night",
+                "last night",
+                "nights",
+                "clear nights",
+                "hours a night",
+                "gap after [d]",
+            ],
+            rows,
+        )
+    )
     return 0
 
 
@@ -152,7 +187,10 @@ def score(options: Namespace) -> int:
         campaign, pipeline.forecast_targets(campaign), pipeline.observe_sky(campaign)
     )
     _, scores = pipeline.score_all(
-        campaign, prospects, workers=options.workers, store=_store(folder),
+        campaign,
+        prospects,
+        workers=options.workers,
+        store=_store(folder),
         progress=ProgressLine(quiet=options.quiet),
     )
     flat = [s for of_target in scores for s in of_target]
@@ -160,18 +198,42 @@ def score(options: Namespace) -> int:
         return 0
     rows = [
         [
-            s.target, f"{s.layout.cadence_line_nights:g}",
+            s.target,
+            f"{s.layout.cadence_line_nights:g}",
             f"{s.layout.cadence_continuum_nights:g}",
-            f"{s.layout.seasons} × {s.layout.season_length_d:g} d", f"{s.epochs_line:.0f}",
-            *([f"{s.success:.0%}", f"{s.success_lo:.0%}–{s.success_hi:.0%}",
-               f"{s.false_claims:.0%}", f"{s.hours:.0f}"] if s.trials else ["–"] * 4), s.note,
+            f"{s.layout.seasons} × {s.layout.season_length_d:g} d",
+            f"{s.epochs_line:.0f}",
+            *(
+                [
+                    f"{s.success:.0%}",
+                    f"{s.success_lo:.0%}–{s.success_hi:.0%}",
+                    f"{s.false_claims:.0%}",
+                    f"{s.hours:.0f}",
+                ]
+                if s.trials
+                else ["–"] * 4
+            ),
+            s.note,
         ]
         for s in flat
     ]
-    _say(table_text(
-        ["target", "spectra every [n]", "imaging every [n]", "seasons", "spectra", "success",
-         "90 % bounds", "wrong", "hours", "note"], rows,
-    ))
+    _say(
+        table_text(
+            [
+                "target",
+                "spectra every [n]",
+                "imaging every [n]",
+                "seasons",
+                "spectra",
+                "success",
+                "90 % bounds",
+                "wrong",
+                "hours",
+                "note",
+            ],
+            rows,
+        )
+    )
     return 0
 
 
@@ -182,7 +244,9 @@ def schedule(options: Namespace) -> int:
     reading = _read(options)
     folder = _claim(options, reading)
     made = pipeline.make_plan(
-        reading, workers=options.workers, store=_store(folder),
+        reading,
+        workers=options.workers,
+        store=_store(folder),
         progress=ProgressLine(quiet=options.quiet),
     )
     table = export.schedule_table(made.campaign, made.visits)
@@ -190,14 +254,23 @@ def schedule(options: Namespace) -> int:
         export.write_csv(table, folder / "schedule.csv")
     if _give(options, folder, {"schedule": table}):
         return 0
-    _say(table_text(
-        ["night", "start [UTC]", "end [UTC]", "telescope", "target", "stream", "airmass"],
-        [
-            [str(v["night"]), str(v["start_utc"]), str(v["end_utc"]), str(v["telescope"]),
-             str(v["target"]), str(v["stream"]), f"{v['airmass']:.2f}"]
-            for v in table
-        ],
-    ))
+    _say(
+        table_text(
+            ["night", "start [UTC]", "end [UTC]", "telescope", "target", "stream", "airmass"],
+            [
+                [
+                    str(v["night"]),
+                    str(v["start_utc"]),
+                    str(v["end_utc"]),
+                    str(v["telescope"]),
+                    str(v["target"]),
+                    str(v["stream"]),
+                    f"{v['airmass']:.2f}",
+                ]
+                for v in table
+            ],
+        )
+    )
     _say("\n" + CAUTION)
     return 0
 
@@ -214,7 +287,9 @@ def plan(options: Namespace) -> int:
     store = _store(folder)
     try:
         made = pipeline.make_plan(
-            reading, workers=options.workers, store=store,
+            reading,
+            workers=options.workers,
+            store=store,
             progress=ProgressLine(quiet=options.quiet),
         )
         pipeline.write_plan(made, reading, folder)
@@ -230,17 +305,35 @@ def plan(options: Namespace) -> int:
         if s is None:
             rows.append([r.target, r.decision, *["–"] * 7])
             continue
-        rows.append([
-            r.target, r.decision, f"{s.layout.cadence_line_nights:g}",
-            f"{s.layout.cadence_continuum_nights:g}",
-            f"{s.layout.seasons} × {s.layout.season_length_d:g} d", f"{s.success:.0%}",
-            f"{s.success_lo:.0%}–{s.success_hi:.0%}",
-            "–" if kept is None else f"{kept.success:.0%}", f"{s.hours:.0f}",
-        ])
-    _say(table_text(
-        ["target", "decision", "spectra every [n]", "imaging every [n]", "seasons", "success",
-         "90 % bounds", "in the schedule", "hours"], rows,
-    ))
+        rows.append(
+            [
+                r.target,
+                r.decision,
+                f"{s.layout.cadence_line_nights:g}",
+                f"{s.layout.cadence_continuum_nights:g}",
+                f"{s.layout.seasons} × {s.layout.season_length_d:g} d",
+                f"{s.success:.0%}",
+                f"{s.success_lo:.0%}–{s.success_hi:.0%}",
+                "–" if kept is None else f"{kept.success:.0%}",
+                f"{s.hours:.0f}",
+            ]
+        )
+    _say(
+        table_text(
+            [
+                "target",
+                "decision",
+                "spectra every [n]",
+                "imaging every [n]",
+                "seasons",
+                "success",
+                "90 % bounds",
+                "in the schedule",
+                "hours",
+            ],
+            rows,
+        )
+    )
     for r in made.recommendations:
         _say(f"\n{r.target}: {r.why}.")
     _say(f"\n{len(made.visits)} visits scheduled; everything stands in {folder}/report.html")
@@ -262,7 +355,8 @@ def compare(options: Namespace) -> int:
         forecasts = pipeline.forecast_targets(campaign)
         prospects = pipeline.prospects_of(campaign, forecasts, pipeline.observe_sky(campaign))
         work = {
-            "workers": options.workers, "store": _store(None),
+            "workers": options.workers,
+            "store": _store(None),
             "progress": ProgressLine(quiet=options.quiet),
         }
         tables, scores = pipeline.score_all(campaign, prospects, **work)
@@ -276,17 +370,32 @@ def compare(options: Namespace) -> int:
         return 0
     rows = [
         [
-            r.name, f"{r.goal_met}/{r.targets}", f"{r.hours:.0f}", f"{r.lags:.1f}",
-            f"{r.lags_lo:.0f}–{r.lags_hi:.0f}", f"{r.wrong_claims:.1f}",
+            r.name,
+            f"{r.goal_met}/{r.targets}",
+            f"{r.hours:.0f}",
+            f"{r.lags:.1f}",
+            f"{r.lags_lo:.0f}–{r.lags_hi:.0f}",
+            f"{r.wrong_claims:.1f}",
             "" if i == 0 else f"{r.gain:+.2f} ({r.gain_lo:+.2f} to {r.gain_hi:+.2f})",
             "" if i == 0 else "yes" if r.told_apart else "cannot be told apart",
         ]
         for i, r in enumerate(results)
     ]
-    _say(table_text(
-        ["scenario", "goal met", "hours", "lags", "10–90 %", "wrong",
-         f"lags more than {results[0].name}", "difference sure"], rows,
-    ))
+    _say(
+        table_text(
+            [
+                "scenario",
+                "goal met",
+                "hours",
+                "lags",
+                "10–90 %",
+                "wrong",
+                f"lags more than {results[0].name}",
+                "difference sure",
+            ],
+            rows,
+        )
+    )
     return 0
 
 

@@ -61,7 +61,7 @@ class _Parser(argparse.ArgumentParser):
 def _parser() -> argparse.ArgumentParser:
     parser = _Parser(
         prog="planner",
-        description="Plan reverberation-mapping campaigns: lags, nights, cadence, chance of success.",
+        description="Plan reverberation-mapping campaigns: lags, nights, cadence, success.",
         epilog=EXAMPLES,
         formatter_class=argparse.RawDescriptionHelpFormatter,
     )
@@ -79,39 +79,45 @@ def _parser() -> argparse.ArgumentParser:
         command = commands.add_parser(name, help=words, description=words, parents=[shared])
         command.add_argument("file", type=Path, metavar="FILE", help="campaign file (YAML)")
     compare = commands.add_parser(
-        "compare", help="scenarios side by side", description="scenarios side by side",
+        "compare",
+        help="scenarios side by side",
+        description="scenarios side by side",
         parents=[shared],
     )
     compare.add_argument("files", type=Path, nargs="+", metavar="FILE", help="campaign files")
     _add_recover(commands, shared)
     start = commands.add_parser(
-        "start", help="a commented campaign file and target list to edit",
+        "start",
+        help="a commented campaign file and target list to edit",
         description="Write a commented campaign file and target list to edit.",
     )
     start.add_argument("folder", type=Path, metavar="DIR")
     return parser
 
 
-def _add_recover(
-    commands: argparse._SubParsersAction[_Parser], shared: argparse.ArgumentParser
-) -> None:
+def _add_recover(commands: argparse._SubParsersAction[_Parser], shared: _Parser) -> None:
     words = "the lag of your own two light curves, by the same method that judged the plan"
     recover = commands.add_parser("recover", help=words, description=words, parents=[shared])
     for name in ("continuum", "line"):
         recover.add_argument(
-            name, type=Path, metavar=name.upper(),
+            name,
+            type=Path,
+            metavar=name.upper(),
             help=f"{name} light curve: CSV or ECSV with columns time (days), flux, flux_error",
         )
 
 
-def _shared() -> argparse.ArgumentParser:
-    shared = argparse.ArgumentParser(add_help=False)
+def _shared() -> _Parser:
+    shared = _Parser(add_help=False)
     shared.add_argument("--out", type=Path, metavar="DIR", help="folder for the results")
     shared.add_argument(
         "--replace", action="store_true", help="overwrite an earlier plan in that folder"
     )
     shared.add_argument(
-        "--workers", type=_count, metavar="N", default=os.cpu_count() or 1,
+        "--workers",
+        type=_count,
+        metavar="N",
+        default=os.cpu_count() or 1,
         help="processes to use (default: all cores; the results do not depend on it)",
     )
     shared.add_argument("--seed", type=_seed, metavar="N", help="random seed instead of the file's")

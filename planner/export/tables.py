@@ -62,19 +62,43 @@ def lags_table(forecasts: Sequence[Forecast]) -> Table:
             ("lag_obs_lo", _significant(lag / spread), "d", "16th percentile, observed frame"),
             ("lag_obs_hi", _significant(lag * spread), "d", "84th percentile, observed frame"),
             ("relation", [x.relation for x in f], None, "radius-luminosity relation"),
-            ("outside_range", [x.outside_range for x in f], None,
-             "luminosity outside the range in which the relation was calibrated"),
-            ("log_luminosity", _rounded([x.log_luminosity for x in f], 2), "dex(erg s-1)",
-             "log10 of lambda L_lambda of the AGN"),
-            ("wavelength", [x.luminosity_wavelength_a for x in f], "Angstrom",
-             "rest wavelength of log_luminosity"),
-            ("amplitude", _significant([x.amplitude_mag for x in f], 2), "mag",
-             "median long-term rms of the AGN's light"),
-            ("timescale_obs", _significant([x.timescale_obs_d for x in f], 2), "d",
-             "median damping timescale, observed frame"),
+            (
+                "outside_range",
+                [x.outside_range for x in f],
+                None,
+                "luminosity outside the range in which the relation was calibrated",
+            ),
+            (
+                "log_luminosity",
+                _rounded([x.log_luminosity for x in f], 2),
+                "dex(erg s-1)",
+                "log10 of lambda L_lambda of the AGN",
+            ),
+            (
+                "wavelength",
+                [x.luminosity_wavelength_a for x in f],
+                "Angstrom",
+                "rest wavelength of log_luminosity",
+            ),
+            (
+                "amplitude",
+                _significant([x.amplitude_mag for x in f], 2),
+                "mag",
+                "median long-term rms of the AGN's light",
+            ),
+            (
+                "timescale_obs",
+                _significant([x.timescale_obs_d for x in f], 2),
+                "d",
+                "median damping timescale, observed frame",
+            ),
             ("log_mass", _rounded([x.log_mass for x in f], 2), "dex(solMass)", "expected mass"),
-            ("mass_dex", _rounded([x.mass_dex for x in f], 2), "dex",
-             "error of the mass to expect from the campaign"),
+            (
+                "mass_dex",
+                _rounded([x.mass_dex for x in f], 2),
+                "dex",
+                "error of the mass to expect from the campaign",
+            ),
         ]
     )
 
@@ -120,13 +144,25 @@ def seasons_table(campaign: Campaign, prospects: Sequence[Prospect]) -> Table:
     return _table(
         [
             ("target", np.array([name for name, _ in rows], dtype=str), None, "name"),
-            ("first_night", _dates(np.array([first + s.first for _, s in rows], dtype=int)),
-             None, "local date of the first evening"),
-            ("last_night", _dates(np.array([first + s.last for _, s in rows], dtype=int)),
-             None, "local date of the last evening"),
+            (
+                "first_night",
+                _dates(np.array([first + s.first for _, s in rows], dtype=int)),
+                None,
+                "local date of the first evening",
+            ),
+            (
+                "last_night",
+                _dates(np.array([first + s.last for _, s in rows], dtype=int)),
+                None,
+                "local date of the last evening",
+            ),
             ("nights", [s.nights for _, s in rows], None, "nights with a usable window"),
-            ("gap_after", [s.gap_after_nights for _, s in rows], "d",
-             "until the next season or the campaign's end"),
+            (
+                "gap_after",
+                [s.gap_after_nights for _, s in rows],
+                "d",
+                "until the next season or the campaign's end",
+            ),
         ]
     )
 
@@ -139,26 +175,53 @@ def scores_table(scores: Sequence[Score]) -> Table:
         [
             ("target", np.array([x.target for x in s], dtype=str), None, "name"),
             ("cadence_line", [x.cadence_line_nights for x in layout], "d", "between spectra"),
-            ("cadence_continuum", [x.cadence_continuum_nights for x in layout], "d",
-             "between continuum epochs"),
+            (
+                "cadence_continuum",
+                [x.cadence_continuum_nights for x in layout],
+                "d",
+                "between continuum epochs",
+            ),
             ("season_length", [x.season_length_d for x in layout], "d", "of each season"),
             ("seasons", [x.seasons for x in layout], None, "number of seasons"),
             ("epochs_line", _rounded([x.epochs_line for x in s], 1), None, "mean over weather"),
-            ("epochs_continuum", _rounded([x.epochs_continuum for x in s], 1), None,
-             "mean over weather"),
-            ("success", _rounded([x.success for x in s], 4), None,
-             "share of trials with a right claim"),
-            ("success_lo", _rounded([x.success_lo for x in s], 4), None,
-             "lower end, 90 % confidence (Wilson)"),
-            ("success_hi", _rounded([x.success_hi for x in s], 4), None,
-             "upper end, 90 % confidence (Wilson)"),
-            ("false_claims", _rounded([x.false_claims for x in s], 4), None,
-             "share of trials with a wrong claim"),
-            ("false_claims_hi", _rounded([x.false_claims_hi for x in s], 4), None,
-             "upper end, 90 % confidence (Wilson)"),
+            (
+                "epochs_continuum",
+                _rounded([x.epochs_continuum for x in s], 1),
+                None,
+                "mean over weather",
+            ),
+            (
+                "success",
+                _rounded([x.success for x in s], 4),
+                None,
+                "share of trials with a right claim",
+            ),
+            (
+                "success_lo",
+                _rounded([x.success_lo for x in s], 4),
+                None,
+                "lower end, 90 % confidence (Wilson)",
+            ),
+            (
+                "success_hi",
+                _rounded([x.success_hi for x in s], 4),
+                None,
+                "upper end, 90 % confidence (Wilson)",
+            ),
+            (
+                "false_claims",
+                _rounded([x.false_claims for x in s], 4),
+                None,
+                "share of trials with a wrong claim",
+            ),
+            (
+                "false_claims_hi",
+                _rounded([x.false_claims_hi for x in s], 4),
+                None,
+                "upper end, 90 % confidence (Wilson)",
+            ),
             ("hours", _rounded([x.hours for x in s], 2), "h", "clock hours, both streams"),
-            ("hours_line", _rounded([x.hours_line for x in s], 2), "h",
-             "clock hours, line stream"),
+            ("hours_line", _rounded([x.hours_line for x in s], 2), "h", "clock hours, line stream"),
             ("trials", [x.trials for x in s], None, "0: the layout cannot be scheduled"),
             ("note", np.array([x.note for x in s], dtype=str), None, "what stands in the way"),
         ]
@@ -189,11 +252,19 @@ def recommendation_table(
     return _table(
         [
             ("target", [r.target for r in recommendations], None, "name"),
-            ("decision", [r.decision for r in recommendations], None,
-             "observe: goal met; risky: goal missed, still scheduled; leave out: not scheduled"),
+            (
+                "decision",
+                [r.decision for r in recommendations],
+                None,
+                "observe: goal met; risky: goal missed, still scheduled; leave out: not scheduled",
+            ),
             ("cadence_line", layout("cadence_line_nights"), "d", "between spectra"),
-            ("cadence_continuum", layout("cadence_continuum_nights"), "d",
-             "between continuum epochs"),
+            (
+                "cadence_continuum",
+                layout("cadence_continuum_nights"),
+                "d",
+                "between continuum epochs",
+            ),
             ("season_length", layout("season_length_d"), "d", "of each season"),
             ("seasons", layout("seasons"), None, "number of seasons"),
             ("success", of("success", 4), None, "share of trials with a right claim, target alone"),
@@ -201,17 +272,37 @@ def recommendation_table(
             ("success_hi", of("success_hi", 4), None, "upper end, 90 % confidence (Wilson)"),
             ("false_claims", of("false_claims", 4), None, "share of trials with a wrong claim"),
             ("hours", of("hours", 2), "h", "clock hours to expect, both streams"),
-            ("success_scheduled", _rounded([nan if s is None else s.success for s in run], 4), None,
-             "success on the nights that the schedule of all targets leaves under weather"),
-            ("success_scheduled_lo", _rounded([nan if s is None else s.success_lo for s in run], 4),
-             None, "lower end, 90 % confidence (Wilson)"),
-            ("epochs_line_scheduled",
-             _rounded([nan if s is None else s.epochs_line for s in run], 1), None,
-             "line epochs that the schedule leaves, mean over weather"),
+            (
+                "success_scheduled",
+                _rounded([nan if s is None else s.success for s in run], 4),
+                None,
+                "success on the nights that the schedule of all targets leaves under weather",
+            ),
+            (
+                "success_scheduled_lo",
+                _rounded([nan if s is None else s.success_lo for s in run], 4),
+                None,
+                "lower end, 90 % confidence (Wilson)",
+            ),
+            (
+                "epochs_line_scheduled",
+                _rounded([nan if s is None else s.epochs_line for s in run], 1),
+                None,
+                "line epochs that the schedule leaves, mean over weather",
+            ),
             ("why", [r.why for r in recommendations], None, "reason in words"),
-            ("helps", ["; ".join(
-                f"{h.change}: {h.success:.0%} ({h.gain:+.0%}, {h.hours:+.0f} h)" for h in r.helps
-            ) for r in recommendations], None, "changes tried where the goal is missed"),
+            (
+                "helps",
+                [
+                    "; ".join(
+                        f"{h.change}: {h.success:.0%} ({h.gain:+.0%}, {h.hours:+.0f} h)"
+                        for h in r.helps
+                    )
+                    for r in recommendations
+                ],
+                None,
+                "changes tried where the goal is missed",
+            ),
         ]
     )
 

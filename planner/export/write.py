@@ -46,10 +46,7 @@ def _no_formula(cell: str) -> str:
 
 def as_rows(table: Table) -> list[dict[str, Any]]:
     """Return a table as plain dictionaries, fit for JSON: NaN becomes None."""
-    return [
-        {name: _plain(row[name]) for name in table.colnames}
-        for row in table
-    ]
+    return [{name: _plain(row[name]) for name in table.colnames} for row in table]
 
 
 def _plain(value: Any) -> Any:

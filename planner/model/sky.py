@@ -8,7 +8,7 @@ from enum import IntEnum
 import numpy as np
 from numpy.typing import NDArray
 
-__all__ = ["Nights", "NightState", "Season", "Windows"]
+__all__ = ["NightState", "Nights", "Season", "Windows"]
 
 
 class NightState(IntEnum):

@@ -74,9 +74,7 @@ def changes_for(campaign: Campaign, best: Score) -> tuple[Change, ...]:
     )
     longer = 1.5 * layout.season_length_d
     changes.append(
-        Change(
-            f"seasons of {longer:.0f} d", campaign, replace(layout, season_length_d=longer)
-        )
+        Change(f"seasons of {longer:.0f} d", campaign, replace(layout, season_length_d=longer))
     )
     more = layout.seasons + 1
     changes.append(
@@ -93,9 +91,7 @@ def _nights(cadence: float) -> str:
     return "night" if cadence == 1 else f"{cadence:g} nights"
 
 
-def helps_of(
-    base: Score, tried: Sequence[tuple[Change, Score]]
-) -> tuple[Help, ...]:
+def helps_of(base: Score, tried: Sequence[tuple[Change, Score]]) -> tuple[Help, ...]:
     """Return what each change brings over the best layout.
 
     Parameters

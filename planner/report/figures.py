@@ -9,6 +9,7 @@ import numpy as np
 from matplotlib.axes import Axes
 from matplotlib.figure import Figure
 from matplotlib.gridspec import GridSpec
+from matplotlib.image import AxesImage
 
 from planner.model.campaign import Campaign
 from planner.model.plan import SiteSky
@@ -62,7 +63,11 @@ def success_figure(scores: Sequence[Score], chosen: Score, goal: float) -> Figur
                 ax.plot(
                     lengths.index(chosen.layout.season_length_d),
                     cadences.index(chosen.layout.cadence_line_nights),
-                    "o", ms=23, mfc="none", mec=VERMILION, mew=2.5,
+                    "o",
+                    ms=23,
+                    mfc="none",
+                    mec=VERMILION,
+                    mew=2.5,
                 )
             ax.set_xticks(range(len(lengths)), [f"{v:g}" for v in lengths])
             ax.set_yticks(range(len(cadences)), [f"{v:g}" for v in cadences])
@@ -75,15 +80,19 @@ def success_figure(scores: Sequence[Score], chosen: Score, goal: float) -> Figur
     return figure
 
 
-def _grid_panel(ax: Axes, grid: np.ndarray, goal: float) -> object:
+def _grid_panel(ax: Axes, grid: np.ndarray, goal: float) -> AxesImage:
     """Draw one panel of shades with its numbers and the goal's contour; return the shades."""
     ax.set_facecolor("#d9d9d9")
     image = ax.imshow(grid, vmin=0, vmax=1, cmap=SHADES, aspect="auto", origin="lower")
     for (row, column), value in np.ndenumerate(grid):
         known = np.isfinite(value)
         ax.text(
-            column, row, f"{100 * value:.0f}" if known else "–",
-            ha="center", va="center", fontsize=8,
+            column,
+            row,
+            f"{100 * value:.0f}" if known else "–",
+            ha="center",
+            va="center",
+            fontsize=8,
             color="white" if known and value < 0.55 else "black",
         )
     _goal_contour(ax, np.nan_to_num(grid, nan=-1.0) >= goal)
@@ -120,14 +129,21 @@ def visibility_figure(campaign: Campaign, sky: SiteSky) -> Figure:
         moon = figure.add_subplot(grid[0])
         main = figure.add_subplot(grid[1], sharex=moon)
         extent = (-0.5, nights.night.size - 0.5, len(targets) - 0.5, -0.5)
-        moon.fill_between(np.arange(nights.night.size), nights.moon_illumination, color=ORANGE, lw=0)
+        moon.fill_between(
+            np.arange(nights.night.size), nights.moon_illumination, color=ORANGE, lw=0
+        )
         moon.set_ylim(0, 1)
         moon.set_yticks([0, 1], ["new", "full"])
         moon.set_ylabel("moon", rotation=0, ha="right", va="center")
         moon.tick_params(labelbottom=False)
         image = main.imshow(
-            np.where(hours > 0, hours, np.nan), aspect="auto", cmap=SHADES, extent=extent,
-            vmin=0, vmax=max(1.0, float(hours.max())), interpolation="nearest",
+            np.where(hours > 0, hours, np.nan),
+            aspect="auto",
+            cmap=SHADES,
+            extent=extent,
+            vmin=0,
+            vmax=max(1.0, float(hours.max())),
+            interpolation="nearest",
         )
         main.set_yticks(range(len(targets)), targets)
         _month_ticks(main, int(nights.night[0]), nights.night.size)
@@ -178,9 +194,16 @@ def example_figure(example: Example) -> Figure:
         for ax in (correlation, centroids):
             ax.axvline(example.lag_true_d, color=GREEN, lw=1.5, ls="--", label="true lag")
             if result is not None and np.isfinite(result.lag_d):
-                ax.axvspan(result.lag_lo_d, result.lag_hi_d, color=ORANGE, alpha=0.35, lw=0,
-                           label="recovered, 68 %")
-        centroids.legend(loc="upper left", fontsize=7)
+                ax.axvspan(
+                    result.lag_lo_d,
+                    result.lag_hi_d,
+                    color=ORANGE,
+                    alpha=0.35,
+                    lw=0,
+                    label="recovered, 68 %",
+                )
+        centroids.set_ylim(top=1.6 * max(1.0, centroids.get_ylim()[1]))  # room for the legend
+        centroids.legend(loc="upper right", fontsize=7)
     return figure
 
 

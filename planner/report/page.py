@@ -34,9 +34,7 @@ def page(plan: Plan, figures: dict[str, bytes], defaults: list[tuple[str, str, s
         plan=plan,
         cards=[_card(plan, i, images) for i in range(len(plan.recommendations))],
         summary=_summary(plan),
-        visibility={
-            site: images[f"visibility {site}"] for site in plan.skies
-        },
+        visibility={site: images[f"visibility {site}"] for site in plan.skies},
         defaults=defaults,
     ).encode()
 

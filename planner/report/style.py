@@ -16,7 +16,7 @@ BLUE, ORANGE, GREEN, VERMILION = "#0072B2", "#E69F00", "#009E73", "#D55E00"
 INK, GREY = "#222222", "#8a8a8a"
 SHADES = "cividis"
 
-_STYLE: dict[str, Any] = {
+_STYLE: Any = {
     "font.size": 9,
     "axes.titlesize": 9,
     "axes.labelsize": 9,
@@ -30,7 +30,7 @@ _STYLE: dict[str, Any] = {
 
 
 def new_figure(width_in: float, height_in: float) -> Figure:
-    """Return an empty figure in the house style; the user's matplotlib settings stay as they are."""
+    """Return an empty figure in the house style; the user's own settings stay as they are."""
     with rc_context(_STYLE):
         figure = Figure(figsize=(width_in, height_in), layout="constrained")
         FigureCanvasAgg(figure)

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field, replace
 
 import numpy as np
@@ -15,8 +15,8 @@ from planner.schedule.requests import Request
 
 __all__ = ["assign", "planned", "used_nights"]
 
-Clear = Callable[[str, int], bool]
-"""Whether a site (by name) is usable on a night (since the campaign's first)."""
+Clear = Mapping[str, NDArray[np.bool_]]
+"""By site: whether each night, counted from the campaign's first, is usable."""
 
 SECONDS_PER_DAY = 86400.0
 
@@ -38,7 +38,10 @@ class _Ledger:
         a, slack = self.allotment, 1e-9
         return (
             (a.hours is None or self.hours + visit_h <= a.hours + slack)
-            and (a.hours_per_night is None or self.hours_tonight + visit_h <= a.hours_per_night + slack)
+            and (
+                a.hours_per_night is None
+                or self.hours_tonight + visit_h <= a.hours_per_night + slack
+            )
             and (a.nights is None or bool(self.tonight) or self.nights < a.nights)
         )
 
@@ -49,7 +52,9 @@ class _Ledger:
         self.hours_tonight += (end - start) * 24
 
 
-def assign(campaign: Campaign, requests: Sequence[Request], clear: Clear) -> list[Visit]:
+def assign(
+    campaign: Campaign, requests: Sequence[Request], clear: Clear | None = None
+) -> list[Visit]:
     """Assign visits to nights and times.
 
     On each night, the visits that are due are ranked by how many cadences have passed since the
@@ -60,9 +65,9 @@ def assign(campaign: Campaign, requests: Sequence[Request], clear: Clear) -> lis
     ----------
     campaign : Campaign
     requests : sequence of Request
-    clear : callable
-        ``lambda site, night: True`` gives the plan for clear skies; a simulated sky gives what the
-        campaign would really get.
+    clear : mapping of str to (nights,) bool arrays, optional
+        Usable nights of each site: a simulated sky gives what the campaign would really get. None:
+        the plan for clear skies.
 
     Returns
     -------
@@ -83,7 +88,7 @@ def assign(campaign: Campaign, requests: Sequence[Request], clear: Clear) -> lis
             while night > request.last[season[r]]:
                 season[r] += 1
                 due[r] = float(request.first[season[r]])
-            if night >= due[r] and clear(request.nights.site, night):
+            if night >= due[r] and (clear is None or clear[request.nights.site][night]):
                 overdue = (night - due[r]) / request.cadence_nights + 1
                 ranked.append((-overdue * request.priority, r, row))
         tonight = []
@@ -99,7 +104,7 @@ def assign(campaign: Campaign, requests: Sequence[Request], clear: Clear) -> lis
 
 
 def _index_by_night(requests: Sequence[Request]) -> dict[int, list[tuple[int, int]]]:
-    """Return, for each night, the (request, row of its nights) that have a window inside a season."""
+    """Return, for each night, (request, row of its nights) of every window inside a season."""
     by_night: dict[int, list[tuple[int, int]]] = {}
     for r, request in enumerate(requests):
         night = request.nights.night
@@ -128,7 +133,10 @@ def _fit(request: Request, row: int, night: int, ledger: _Ledger) -> Visit | Non
         s
         for s in starts
         if earliest <= s <= latest
-        and all(s + length <= b_start + _TOUCH or s >= b_end - _TOUCH for b_start, b_end in ledger.tonight)
+        and all(
+            s + length <= b_start + _TOUCH or s >= b_end - _TOUCH
+            for b_start, b_end in ledger.tonight
+        )
     ]
     if not free:
         return None
@@ -149,14 +157,12 @@ _TOUCH = 1e-9
 """Days (0.1 ms) by which two visits may touch, against rounding."""
 
 
-def planned(
-    campaign: Campaign, requests: Sequence[Request]
-) -> tuple[list[Visit], list[Unplaced]]:
+def planned(campaign: Campaign, requests: Sequence[Request]) -> tuple[list[Visit], list[Unplaced]]:
     """Return the schedule for clear skies, and the requests that did not get all their visits."""
-    visits = assign(campaign, requests, lambda _site, _night: True)
+    visits = assign(campaign, requests)
     unplaced = []
     for request in requests:
-        alone = assign(_unlimited(campaign), [request], lambda _site, _night: True)
+        alone = assign(_unlimited(campaign), [request])
         placed = sum(v.target == request.target and v.stream == request.stream for v in visits)
         if placed < len(alone):
             unplaced.append(
@@ -179,12 +185,12 @@ def _unlimited(campaign: Campaign) -> Campaign:
     )
 
 
-def used_nights(
-    requests: Sequence[Request], visits: Sequence[Visit]
-) -> list[NDArray[np.bool_]]:
+def used_nights(requests: Sequence[Request], visits: Sequence[Visit]) -> list[NDArray[np.bool_]]:
     """Return, for each request, which of its nights on offer the visits used."""
     rows = {
-        (r.target, r.stream): dict(zip(r.nights.night.tolist(), range(r.nights.night.size), strict=True))
+        (r.target, r.stream): dict(
+            zip(r.nights.night.tolist(), range(r.nights.night.size), strict=True)
+        )
         for r in requests
     }
     used = {(r.target, r.stream): np.zeros(r.nights.night.size, dtype=bool) for r in requests}

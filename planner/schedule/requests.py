@@ -31,9 +31,7 @@ class Request:
     priority: float
 
 
-def requests_of(
-    campaign: Campaign, chosen: list[tuple[Prospect, Layout]]
-) -> tuple[Request, ...]:
+def requests_of(campaign: Campaign, chosen: list[tuple[Prospect, Layout]]) -> tuple[Request, ...]:
     """Return two requests, line and continuum, for each target with a chosen layout."""
     priority = {t.name: t.priority for t in campaign.targets}
     requests = []

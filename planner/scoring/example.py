@@ -10,7 +10,15 @@ from planner.model.campaign import Layout
 from planner.model.trial import Prospect, TrialTable
 from planner.recovery import LagResult
 from planner.scoring.placing import place
-from planner.scoring.trials import REASONS, Curves, Setting, draw_trial, nights_used, observe, recover
+from planner.scoring.trials import (
+    REASONS,
+    Curves,
+    Setting,
+    draw_trial,
+    nights_used,
+    observe,
+    recover,
+)
 
 __all__ = ["Example", "example_of"]
 
@@ -27,9 +35,7 @@ class Example:
     """``success``, or why not."""
 
 
-def example_of(
-    setting: Setting, prospect: Prospect, layout: Layout, table: TrialTable
-) -> Example:
+def example_of(setting: Setting, prospect: Prospect, layout: Layout, table: TrialTable) -> Example:
     """Return the first trial that came out the way most trials of the layout did."""
     at = table.layouts.index(layout)
     outcomes = table.reason[at]

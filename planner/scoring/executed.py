@@ -36,7 +36,14 @@ def run_executed(
         draw = draw_trial(setting, prospect, first + i)
         table["lag_true_d"][0, i] = draw.lag_obs_d
         fill(
-            table, (0, i), setting, prospect, draw, taken, span, f"executed {layout}",
+            table,
+            (0, i),
+            setting,
+            prospect,
+            draw,
+            taken,
+            span,
+            f"executed {layout}",
             first + i,
         )
     return table

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
+from itertools import pairwise
 
 import numpy as np
 from numpy.typing import NDArray
@@ -71,10 +72,7 @@ def _by_year(seasons: Sequence[Season]) -> list[Season]:
         nights = s.last - s.first + 1
         years = max(1, round(nights / YEAR_NIGHTS))
         edges = [s.first + round(i * nights / years) for i in range(years + 1)]
-        parts += [
-            replace(s, first=first, last=end - 1)
-            for first, end in zip(edges[:-1], edges[1:], strict=True)
-        ]
+        parts += [replace(s, first=first, last=end - 1) for first, end in pairwise(edges)]
     return parts
 
 

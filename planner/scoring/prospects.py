@@ -68,9 +68,7 @@ def _stream_nights(
     return nights, _only(w, rows)
 
 
-def _usable(
-    sky: SiteSky, index: int, visit_d: float, time: TimeAllotment
-) -> NDArray[np.int64]:
+def _usable(sky: SiteSky, index: int, visit_d: float, time: TimeAllotment) -> NDArray[np.int64]:
     """Return the row of the longest window of each night that holds a visit and is ours."""
     w, dates = sky.windows, sky.nights.night
     if time.hours_per_night is not None and visit_d * 24 > time.hours_per_night + 1e-9:

@@ -116,9 +116,7 @@ def draw_trial(setting: Setting, prospect: Prospect, trial: int) -> Draw:
     """
     forecast, simulation = prospect.forecast, setting.simulation
     name = forecast.name
-    lag_z, amplitude_z, timescale_z = stream(
-        setting.seed, "truth", name, trial
-    ).standard_normal(3)
+    lag_z, amplitude_z, timescale_z = stream(setting.seed, "truth", name, trial).standard_normal(3)
     lag = forecast.lag_obs_d * 10 ** (forecast.lag_scatter_dex * lag_z)
     amplitude = forecast.amplitude_mag * 10 ** (forecast.amplitude_scatter_dex * amplitude_z)
     timescale = forecast.timescale_obs_d * 10 ** (forecast.timescale_scatter_dex * timescale_z)

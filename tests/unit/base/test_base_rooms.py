@@ -49,9 +49,10 @@ def test_a_failed_write_leaves_the_old_file_and_nothing_else(tmp_path):
 
 def test_a_full_disk_is_said_in_one_sentence(tmp_path):
     path = tmp_path / "table"
-    with pytest.raises(OutputError, match=r"table: cannot be written: No space left"), replacing(
-        path
-    ) as temporary:
+    with (
+        pytest.raises(OutputError, match=r"table: cannot be written: No space left"),
+        replacing(path) as temporary,
+    ):
         temporary.write_bytes(b"half")
         raise OSError(28, "No space left on device")
     assert os.listdir(tmp_path) == []

@@ -120,7 +120,7 @@ def test_everything_given_arrives_in_the_record(tmp_path):
     assert draw.response_width == (0.2, 2.0)
     assert campaign.cosmology.hubble_km_s_mpc == pytest.approx(67.7)
     assert campaign.relations == (
-        ("Hbeta", "second"), ("Halpha", ""), ("MgII", "only"), ("CIV", ""),
+        ("Hbeta", "second"), ("Halpha", ""), ("MgII", ""), ("CIV", ""),
     )  # fmt: skip
 
 

@@ -1,4 +1,3 @@
-import numpy as np
 import pytest
 
 from planner.recovery import lag_grid, minimum_overlap, search_range

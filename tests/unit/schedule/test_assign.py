@@ -11,8 +11,6 @@ from planner.model.sky import Season
 from planner.model.trial import Prospect
 from planner.schedule import assign, planned, requests_of, used_nights
 
-ALWAYS = lambda _site, _night: True  # noqa: E731
-
 
 @pytest.fixture
 def two(campaign, forecast, nights):
@@ -85,7 +83,7 @@ def test_visits_sit_at_least_airmass_where_they_can(two):
     campaign, chosen = two
     requests = requests_of(campaign, chosen[:1])
     nights = requests[0].nights
-    for v in assign(campaign, requests[:1], ALWAYS):
+    for v in assign(campaign, requests[:1]):
         middle = (v.start_mjd + v.end_mjd) / 2
         assert middle == pytest.approx(nights.best_mjd[nights.night == v.night][0], abs=1e-6)
 
@@ -93,7 +91,7 @@ def test_visits_sit_at_least_airmass_where_they_can(two):
 def test_no_visit_falls_on_a_lost_night(two):
     campaign, chosen = two
     requests = requests_of(campaign, chosen)
-    visits = assign(campaign, requests, lambda _site, night: night % 5 != 0)
+    visits = assign(campaign, requests, {"Ridge": np.arange(181) % 5 != 0})
     assert visits
     assert all(v.night % 5 for v in visits)
 
@@ -119,7 +117,7 @@ def test_the_more_overdue_goes_first(two):
     campaign = with_time(campaign, hours_per_night=0.6)  # one spectrum a night
     requests = [r for r in requests_of(campaign, chosen) if r.stream == "line"]
     requests[1] = replace(requests[1], cadence_nights=12.0)
-    visits = assign(campaign, requests, lambda _site, night: night > 8)
+    visits = assign(campaign, requests, {"Ridge": np.arange(181) > 8})
     assert visits[0].target == "One"
     assert visits[1].target == "Two"
 
@@ -129,13 +127,13 @@ def test_priority_breaks_the_tie(two):
     campaign = with_time(campaign, hours_per_night=0.6)
     requests = [r for r in requests_of(campaign, chosen) if r.stream == "line"]
     requests[1] = replace(requests[1], priority=2.0)
-    assert assign(campaign, requests, ALWAYS)[0].target == "Two"
+    assert assign(campaign, requests)[0].target == "Two"
 
 
 def test_used_nights_are_those_of_the_visits(two):
     campaign, chosen = two
     requests = requests_of(campaign, chosen)
-    visits = assign(campaign, requests, ALWAYS)
+    visits = assign(campaign, requests)
     for request, used in zip(requests, used_nights(requests, visits), strict=True):
         mine = [v.night for v in visits if (v.target, v.stream) == (request.target, request.stream)]
         assert request.nights.night[used].tolist() == mine
@@ -160,7 +158,9 @@ def test_any_campaign_gives_a_schedule_without_faults(data, campaign, forecast, 
         visit = draw(st.sampled_from([300.0, 1800.0, 5400.0, 10800.0]))
         prospect = Prospect(
             replace(forecast, name=name),
-            nights(61, keep=keep, visit_s=visit), nights(61, keep=keep, visit_s=420.0), (season,),
+            nights(61, keep=keep, visit_s=visit),
+            nights(61, keep=keep, visit_s=420.0),
+            (season,),
         )
         length = draw(st.sampled_from([10.0, 30.0, 60.0]))
         chosen.append((prospect, Layout(draw(st.sampled_from([1.0, 2.5, 6.0])), 1.0, length, 1)))
@@ -169,4 +169,3 @@ def test_any_campaign_gives_a_schedule_without_faults(data, campaign, forecast, 
     assert faults(campaign, requests, visits) == []
     for u in unplaced:
         assert u.placed == sum((v.target, v.stream) == (u.target, u.stream) for v in visits)
-

@@ -20,7 +20,7 @@ def test_the_stretch_with_the_most_hours_is_taken(nights):
     placing = place(
         Layout(3, 1, 60, 1), [Season(0, 0, 179, 80, 0)], nights(180, keep=slice(100, None))
     )
-    (first, last), = spans(placing)
+    ((first, last),) = spans(placing)
     assert first >= 100
     assert last == first + 59
 

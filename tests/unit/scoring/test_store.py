@@ -26,7 +26,9 @@ def test_a_store_without_a_file_keeps_nothing():
     assert store.get("k") is None
 
 
-@pytest.mark.parametrize("content", [b"not a database" * 100, b"SQLite format 3\x00" + b"\xff" * 5000])
+@pytest.mark.parametrize(
+    "content", [b"not a database" * 100, b"SQLite format 3\x00" + b"\xff" * 5000]
+)
 def test_a_damaged_store_is_set_aside(tmp_path, content):
     (tmp_path / "kept").write_bytes(content)
     store = Store(tmp_path / "kept")

@@ -98,7 +98,8 @@ def test_an_easy_target_succeeds_and_a_noisy_one_does_not(campaign, prospect):
         setting_of(campaign), simulation=replace(campaign.simulation, trials=20, resamples=40)
     )
     noisy = replace(
-        prospect, line=replace(prospect.line, flux_error=np.full(181, 1.0)),
+        prospect,
+        line=replace(prospect.line, flux_error=np.full(181, 1.0)),
     )
     good, bad = run([Job(setting, prospect, LAYOUTS[:1]), Job(setting, noisy, LAYOUTS[:1])])
     assert scores_of(prospect, good)[0].success > 0.7
@@ -125,9 +126,9 @@ def test_kept_results_are_used_again(tmp_path, setting, prospect):
     seen = []
     store = Store(tmp_path / "kept")
     first = run([Job(setting, prospect, LAYOUTS)], store=store)[0]
-    again = run(
-        [Job(setting, prospect, LAYOUTS)], store=store, progress=lambda *a: seen.append(a)
-    )[0]
+    again = run([Job(setting, prospect, LAYOUTS)], store=store, progress=lambda *a: seen.append(a))[
+        0
+    ]
     assert seen == [("trials", 1, 1)]
     assert np.array_equal(first.lag_d, again.lag_d, equal_nan=True)
 
