@@ -28,12 +28,12 @@ from planner.model.target import Forecast, Magnitude, Target
 from planner.model.trial import Prospect, StreamNights
 
 
-class NetworkRefused(RuntimeError):
+class NetworkRefusedError(RuntimeError):
     """A test, or what it runs, asked for the network."""
 
 
 def _no_names(*arguments, **_):
-    raise NetworkRefused(f"look-up of {arguments}")
+    raise NetworkRefusedError(f"look-up of {arguments}")
 
 
 @pytest.fixture(autouse=True)
@@ -43,7 +43,7 @@ def no_network(monkeypatch):
 
     def refuse(self, address, *_):
         if self.family in {socket.AF_INET, socket.AF_INET6}:
-            raise NetworkRefused(f"connection to {address}")
+            raise NetworkRefusedError(f"connection to {address}")
         return original(self, address)
 
     monkeypatch.setattr(socket.socket, "connect", refuse)

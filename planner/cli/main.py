@@ -6,6 +6,7 @@ import argparse
 import os
 import sys
 from collections.abc import Callable, Sequence
+from importlib import import_module
 from pathlib import Path
 
 from planner.base.errors import PlannerError
@@ -44,10 +45,15 @@ def main(arguments: Sequence[str] | None = None) -> int:
 
 
 def _command(name: str) -> Callable[[argparse.Namespace], int]:
-    from planner.cli import commands
-
-    found: Callable[[argparse.Namespace], int] = getattr(commands, name)
+    found: Callable[[argparse.Namespace], int] = getattr(import_module(_MODULES[name]), name)
     return found
+
+
+_MODULES = {
+    **dict.fromkeys(("start", "check", "lags", "nights"), "planner.cli.inputs"),
+    **dict.fromkeys(("score", "schedule", "plan", "compare"), "planner.cli.planning"),
+    "recover": "planner.cli.own_curves",
+}
 
 
 class _Parser(argparse.ArgumentParser):

@@ -1,4 +1,5 @@
 from dataclasses import replace
+from itertools import pairwise
 
 import numpy as np
 import pytest
@@ -51,9 +52,7 @@ def faults(campaign, requests, visits):
     for name, booked in by_telescope.items():
         booked.sort(key=lambda v: v.start_mjd)
         found += [
-            f"{a} overlaps {b}"
-            for a, b in zip(booked[:-1], booked[1:], strict=True)
-            if b.start_mjd < a.end_mjd - 2e-9
+            f"{a} overlaps {b}" for a, b in pairwise(booked) if b.start_mjd < a.end_mjd - 2e-9
         ]
         time = campaign.telescope(name).time
         hours = {}

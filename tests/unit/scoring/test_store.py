@@ -1,4 +1,3 @@
-import os
 from dataclasses import replace
 
 import numpy as np
@@ -38,8 +37,6 @@ def test_a_damaged_store_is_set_aside(tmp_path, content):
 
 
 def test_a_store_that_cannot_be_made_is_said(tmp_path):
-    (tmp_path / "kept").mkdir()
-    os.rmdir(tmp_path / "kept")
     with pytest.raises(OutputError, match="cannot be opened"):
         Store(tmp_path / "missing" / "kept")
 

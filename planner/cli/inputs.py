@@ -1,0 +1,147 @@
+"""Commands that need no trials: start, check, lags, nights."""
+
+from __future__ import annotations
+
+from argparse import Namespace
+from pathlib import Path
+
+from planner.base.errors import InputError
+from planner.cli.shared import claim, give, read, say, say_json
+from planner.cli.terminal import significant, table_text
+
+__all__ = ["check", "lags", "nights", "start"]
+
+
+def start(options: Namespace) -> int:
+    """Write a commented campaign file and target list."""
+    from importlib.resources import files
+
+    from planner.base.files import write_bytes
+
+    folder: Path = options.folder
+    template = files("planner.cli") / "template"
+    names = ("campaign.yaml", "targets.yaml")
+    for name in names:
+        if (folder / name).exists():
+            raise InputError(f"{folder / name}: exists already; name another folder")
+    try:
+        folder.mkdir(parents=True, exist_ok=True)
+    except OSError as error:
+        raise InputError(f"{folder}: cannot be made: {error.strerror}") from error
+    for name in names:
+        write_bytes(folder / name, (template / name).read_bytes())
+    say(f"Wrote {folder}/campaign.yaml and {folder}/targets.yaml; edit them, then:")
+    say(f"  planner check {folder}/campaign.yaml")
+    return 0
+
+
+def check(options: Namespace) -> int:
+    """Read and validate a campaign file and print what was understood."""
+    from planner.campaign import as_dict, describe
+
+    reading = read(options)
+    if options.json:
+        say_json(as_dict(reading))
+    else:
+        say(describe(reading))
+    return 0
+
+
+def lags(options: Namespace) -> int:
+    """Print each target's expected lag."""
+    from planner import export, pipeline
+
+    reading = read(options)
+    folder = claim(options, reading)
+    forecasts = pipeline.forecast_targets(reading.campaign)
+    if give(options, folder, {"lags": export.lags_table(forecasts)}):
+        return 0
+    rows = []
+    for f in forecasts:
+        spread = 10**f.lag_scatter_dex
+        rows.append(
+            [
+                f.name,
+                f.line,
+                significant(f.lag_rest_d),
+                significant(f.lag_obs_d),
+                f"{significant(f.lag_obs_d / spread)}–{significant(f.lag_obs_d * spread)}",
+                f.relation + (" (outside its range)" if f.outside_range else ""),
+                f"{f.log_luminosity:.2f}",
+                f"{f.log_mass:.1f}",
+                f"{f.mass_dex:.2f}",
+            ]
+        )
+    say(
+        table_text(
+            [
+                "target",
+                "line",
+                "lag rest [d]",
+                "lag observed [d]",
+                "68 % range [d]",
+                "relation",
+                "log L [erg/s]",
+                "log mass [suns]",
+                "mass error [dex]",
+            ],
+            rows,
+        )
+    )
+    return 0
+
+
+def nights(options: Namespace) -> int:
+    """Print each target's seasons and the nights left after weather."""
+    from planner import export, pipeline
+    from planner.base.timescale import date_of_night
+    from planner.weather import expected_clear
+
+    reading = read(options)
+    campaign = reading.campaign
+    folder = claim(options, reading)
+    forecasts = pipeline.forecast_targets(campaign)
+    skies = pipeline.observe_sky(campaign)
+    prospects = pipeline.prospects_of(campaign, forecasts, skies)
+    tables = {
+        "windows": export.windows_table([t.name for t in campaign.targets], skies),
+        "seasons": export.seasons_table(campaign, prospects),
+    }
+    if give(options, folder, tables):
+        return 0
+    climate = campaign.site_of(campaign.line).weather
+    rows = []
+    for p in prospects:
+        for s in p.seasons:
+            inside = (p.line.night >= s.first) & (p.line.night <= s.last)
+            dates = campaign.first_night + p.line.night[inside]
+            hours = (p.line.window_end_mjd - p.line.window_start_mjd)[inside] * 24
+            first, last = (date_of_night(campaign.first_night + n) for n in (s.first, s.last))
+            rows.append(
+                [
+                    p.forecast.name,
+                    first,
+                    last,
+                    str(s.nights),
+                    f"{expected_clear(climate, dates).sum():.0f}",
+                    f"{hours.mean():.1f}",
+                    str(s.gap_after_nights),
+                ]
+            )
+        if not p.seasons:
+            rows.append([p.forecast.name, "–", "–", "0", "0", "–", "–"])
+    say(
+        table_text(
+            [
+                "target",
+                "first night",
+                "last night",
+                "nights",
+                "clear nights",
+                "hours a night",
+                "gap after [d]",
+            ],
+            rows,
+        )
+    )
+    return 0

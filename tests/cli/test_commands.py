@@ -1,0 +1,348 @@
+"""Whole commands: what they print, what they write, how they end."""
+
+import json
+import os
+import shutil
+import signal
+import subprocess
+import sys
+import time
+from pathlib import Path
+
+import pandas as pd
+import pytest
+from astropy.table import QTable, Table
+
+from planner.cli.main import main
+
+FILE = """
+campaign: {name: Small, first_night: 2027-03-01, last_night: 2027-08-31, seed: 7}
+targets:
+  - {name: One, ra: "11:42:10", dec: "-32:15:00", redshift: 0.02,
+     magnitude: {band: V, value: 14.9}, variability: {amplitude: 0.25 mag, timescale: 40 d}}
+  - {name: "=Two", ra: "12:10:00", dec: "-20:00:00", redshift: 0.03,
+     magnitude: {band: V, value: 15.5}}
+  - {name: North, ra: "12:10:00", dec: "+80:00:00", redshift: 0.03,
+     magnitude: {band: V, value: 15.5}}
+site: {name: Ridge, latitude: -30.4 deg, longitude: -70.9 deg, weather: {clear: 75 %}}
+telescopes: [{name: Big, aperture: 2 m}, {name: Small, aperture: 0.5 m}]
+streams:
+  continuum: {telescope: Small, cadence: 1 night}
+  line: {telescope: Big, cadence: [3 nights, 6 nights]}
+season_lengths: [60 d, 120 d]
+seasons: [1, 2]
+simulation: {trials: 20, resamples: 30}
+"""
+
+TABLES = ("lags", "windows", "seasons", "scores", "recommendation", "schedule")
+
+
+@pytest.fixture
+def file(tmp_path):
+    path = tmp_path / "small.yaml"
+    path.write_text(FILE)
+    return path
+
+
+def run(*words, **options):
+    """Run the command in a process of its own."""
+    return subprocess.run(
+        [sys.executable, "-m", "planner", *map(str, words)],
+        capture_output=True, text=True, timeout=300, check=False, **options,
+    )  # fmt: skip
+
+
+@pytest.fixture(scope="module")
+def planned(tmp_path_factory):
+    """One whole plan, made in this process with one worker."""
+    folder = tmp_path_factory.mktemp("planned")
+    (folder / "small.yaml").write_text(FILE)
+    out = folder / "plan"
+    status = main(
+        ["plan", str(folder / "small.yaml"), "--out", str(out), "--workers", "1", "--quiet"]
+    )
+    assert status == 0
+    return out
+
+
+def contents(folder):
+    return {
+        p.relative_to(folder).as_posix(): p.read_bytes()
+        for p in sorted(folder.rglob("*"))
+        if p.is_file() and not p.name.startswith(".")
+    }
+
+
+@pytest.mark.slow
+def test_a_plan_holds_every_file_of_the_contract(planned):
+    names = set(contents(planned))
+    assert {f"{name}.ecsv" for name in TABLES} <= names
+    assert {"schedule.csv", "report.html", "run.json"} <= names
+    assert "figures/success-One.png" in names
+    assert "figures/example-Two.png" in names
+    assert "figures/visibility-Ridge.png" in names
+
+
+@pytest.mark.slow
+def test_tables_open_in_astropy_and_pandas(planned):
+    for name in TABLES:
+        table = QTable.read(planned / f"{name}.ecsv")
+        frame = pd.read_csv(planned / f"{name}.ecsv", comment="#")
+        assert list(frame.columns) == table.colnames
+        assert len(frame) == len(table) > 0
+        assert all(c.info.description for c in table.itercols())
+    lags = QTable.read(planned / "lags.ecsv")
+    assert lags["lag_obs"].unit == "d"
+    assert (lags["lag_obs_lo"] < lags["lag_obs"]).all()
+
+
+@pytest.mark.slow
+def test_the_plan_says_sane_things(planned):
+    advice = Table.read(planned / "recommendation.ecsv")
+    rows = {row["target"]: row for row in advice}
+    assert rows["One"]["success"] > 0.5
+    assert rows["North"]["decision"] == "leave out"
+    assert rows["North"]["why"] == "never observable within the limits"
+    scores = Table.read(planned / "scores.ecsv")
+    assert len(scores) == 3 * 8
+    tried = scores[scores["trials"] > 0]
+    assert set(tried["target"]) == {"One", "=Two"}
+    assert set(tried["seasons"]) == {1}, "the campaign holds one season of each"
+    assert ((scores["success_lo"] <= scores["success"]) | (scores["trials"] == 0)).all()
+    schedule = Table.read(planned / "schedule.ecsv")
+    assert set(schedule["target"]) == {"One", "=Two"}
+    assert (schedule["airmass"] <= 2.01).all()
+    assert (schedule["start_utc"] < schedule["end_utc"]).all()
+
+
+@pytest.mark.slow
+def test_scheduled_visits_stay_in_windows_and_apart(planned):
+    schedule = Table.read(planned / "schedule.ecsv").to_pandas()
+    windows = Table.read(planned / "windows.ecsv").to_pandas()
+    merged = schedule.merge(windows, on=["target", "night"], suffixes=("", "_w"))
+    inside = (merged["start_utc"] >= merged["start_utc_w"]) & (
+        merged["end_utc"] <= merged["end_utc_w"]
+    )
+    assert inside.groupby([merged["target"], merged["stream"], merged["night"]]).any().all()
+    assert len(merged.groupby(["target", "stream", "night"])) == len(schedule)
+    for _, visits in schedule.groupby("telescope"):
+        visits = visits.sort_values("start_utc")
+        assert (visits["start_utc"].iloc[1:].values >= visits["end_utc"].iloc[:-1].values).all()
+
+
+@pytest.mark.slow
+def test_no_cell_of_the_spreadsheet_can_start_a_formula(planned):
+    text = (planned / "schedule.csv").read_text()
+    assert ",'=Two," in text
+    assert ",=Two," not in text
+
+
+@pytest.mark.slow
+def test_the_page_is_one_file_and_escapes_what_it_shows(planned):
+    page = (planned / "report.html").read_text()
+    assert "http://" not in page
+    assert "https://" not in page
+    assert "A plan is no permission" in page
+    assert page.count("<img") == page.count('src="data:image/png;base64,') > 3
+    assert page.count("alt=") == page.count("<img")
+    assert len(page) < 5_000_000
+
+
+@pytest.mark.slow
+def test_the_run_can_be_repeated_from_its_record(planned):
+    record = json.loads((planned / "run.json").read_text())
+    assert record["seed"] == 7
+    assert "UT1" in record["time_note"]
+    assert {"numpy", "astropy", "python"} <= set(record["versions"])
+    (digest,) = record["files"].values()
+    assert len(digest) == 64
+
+
+@pytest.mark.slow
+def test_two_workers_write_the_same_bytes(planned, tmp_path):
+    (tmp_path / "small.yaml").write_text(FILE)
+    done = run("plan", "small.yaml", "--out", "again", "--workers", "2", cwd=tmp_path)
+    assert done.returncode == 0, done.stderr
+    one, two = contents(planned), contents(tmp_path / "again")
+    one.pop("run.json"), two.pop("run.json")  # they name the input file as it was given
+    assert one.keys() == two.keys()
+    assert [name for name in one if one[name] != two[name]] == []
+
+
+@pytest.mark.slow
+def test_a_killed_run_goes_on_and_writes_the_same_bytes(planned, tmp_path):
+    (tmp_path / "small.yaml").write_text(FILE)
+    words = [sys.executable, "-m", "planner", "plan", "small.yaml", "--out", "again"]
+    started = subprocess.Popen(
+        [*words, "--workers", "2"], cwd=tmp_path, start_new_session=True,
+        stdout=subprocess.DEVNULL, stderr=subprocess.DEVNULL,
+    )  # fmt: skip
+    store = tmp_path / "again" / ".trials.sqlite-wal"
+    deadline = time.monotonic() + 120
+    while not (store.exists() and store.stat().st_size > 5000) and time.monotonic() < deadline:
+        time.sleep(0.02)
+    os.killpg(started.pid, signal.SIGKILL)
+    started.wait()
+    left = contents(tmp_path / "again")
+    assert "report.html" not in left, "killed too late to show anything"
+    done = run("plan", "small.yaml", "--out", "again", "--workers", "1", cwd=tmp_path)
+    assert done.returncode == 0, done.stderr
+    one, two = contents(planned), contents(tmp_path / "again")
+    one.pop("run.json"), two.pop("run.json")
+    assert [name for name in one if one[name] != two[name]] == []
+
+
+@pytest.mark.slow
+def test_the_day_of_the_run_does_not_matter(planned, tmp_path):
+    """The clock is moved 15 years ahead and every socket refused; the tables stay the same."""
+    (tmp_path / "small.yaml").write_text(FILE)
+    script = (
+        "import time, socket, datetime, sys\n"
+        "now = time.time\n"
+        "time.time = lambda: now() + 15 * 365.25 * 86400\n"
+        "class Later(datetime.datetime):\n"
+        "    @classmethod\n"
+        "    def now(cls, tz=None): return super().fromtimestamp(time.time(), tz)\n"
+        "    @classmethod\n"
+        "    def utcnow(cls): return super().fromtimestamp(time.time())\n"
+        "datetime.datetime = Later\n"
+        "def refuse(*_): raise RuntimeError('network')\n"
+        "socket.socket.connect = refuse\n"
+        "socket.getaddrinfo = refuse\n"
+        "from planner.cli.main import main\n"
+        "sys.exit(main(['plan', 'small.yaml', '--out', 'later', '--workers', '1', '--quiet']))\n"
+    )
+    done = subprocess.run(
+        [sys.executable, "-W", "error::UserWarning", "-c", script],
+        cwd=tmp_path, capture_output=True, text=True, timeout=300, check=False,
+    )  # fmt: skip
+    assert (done.returncode, done.stderr) == (0, "")
+    one, two = contents(planned), contents(tmp_path / "later")
+    assert [n for n in one if n != "run.json" and one[n] != two[n]] == []
+
+
+def test_help_is_instant_and_loads_no_science():
+    done = run("--help")
+    assert done.returncode == 0
+    assert "planner start mine" in done.stdout
+    script = (
+        "import sys; from planner.cli.main import main\n"
+        "try: main(['--help'])\n"
+        "except SystemExit: pass\n"
+        "print([m for m in ('numpy', 'astropy', 'numba', 'matplotlib') if m in sys.modules])"
+    )
+    loaded = subprocess.run([sys.executable, "-c", script], capture_output=True, text=True, check=True)
+    assert loaded.stdout.splitlines()[-1] == "[]"
+
+
+@pytest.mark.parametrize("command", ["check", "lags", "nights"])
+def test_quick_commands_print_and_give_json(file, capsys, command):
+    assert main([command, str(file)]) == 0
+    assert "One" in capsys.readouterr().out
+    assert main([command, str(file), "--json"]) == 0
+    assert isinstance(json.loads(capsys.readouterr().out), dict)
+
+
+def test_start_gives_a_file_that_passes_the_check(tmp_path, capsys):
+    assert main(["start", str(tmp_path / "mine")]) == 0
+    assert main(["check", str(tmp_path / "mine" / "campaign.yaml")]) == 0
+    assert "default: streams.line.overhead" in capsys.readouterr().out
+    assert main(["start", str(tmp_path / "mine")]) == 2
+    assert "exists already" in capsys.readouterr().err
+
+
+@pytest.mark.slow
+def test_compare_pairs_scenarios(file, tmp_path, capsys):
+    other = tmp_path / "cloudy.yaml"
+    other.write_text(FILE.replace("clear: 75 %", "clear: 40 %"))
+    assert main(["compare", str(file), str(other), "--json", "--quiet", "--workers", "1"]) == 0
+    first, second = json.loads(capsys.readouterr().out)["scenarios"]
+    assert (first["name"], second["name"]) == ("small", "cloudy")
+    assert second["lags"] < first["lags"]
+    assert second["gain"] == pytest.approx(second["lags"] - first["lags"])
+
+
+@pytest.mark.slow
+def test_score_and_schedule_print_tables(file, capsys):
+    assert main(["score", str(file), "--quiet", "--workers", "1"]) == 0
+    assert "120 d" in capsys.readouterr().out
+    assert main(["schedule", str(file), "--quiet", "--workers", "1"]) == 0
+    assert "A plan is no permission" in capsys.readouterr().out
+
+
+BAD_CALLS = {
+    "no such file": (["check", "nowhere.yaml"], "nowhere.yaml: no such file"),
+    "no such command": (["plam", "small.yaml"], "invalid choice: 'plam'"),
+    "no file": (["plan"], "the following arguments are required: FILE"),
+    "workers": (["plan", "small.yaml", "--workers", "0"], "found '0'; expected a whole number"),
+    "seed": (["plan", "small.yaml", "--seed", "-3"], "expected"),
+    "unknown option": (["plan", "small.yaml", "--fast"], "unrecognized arguments: --fast"),
+    "one scenario": (["compare", "small.yaml"], "expected two or more campaign files"),
+    "not our folder": (["lags", "small.yaml", "--out", "taken"], "not a plan (e.g. thesis.tex)"),
+    "a file as folder": (["lags", "small.yaml", "--out", "small.yaml"], "cannot be used"),
+    "typo in the file": (["plan", "typo.yaml"], "did you mean `cadence`?"),
+    "curve without columns": (["recover", "curve.csv", "curve.csv"], "no column flux, flux_error"),
+    "curve with text": (["recover", "text.csv", "text.csv"], "text.csv:3: flux: found bright"),
+}
+
+
+@pytest.mark.parametrize("case", BAD_CALLS)
+def test_bad_calls_end_with_one_message_and_status_2(file, tmp_path, monkeypatch, capsys, case):
+    words, message = BAD_CALLS[case]
+    (tmp_path / "typo.yaml").write_text(FILE.replace("cadence: 1", "cadance: 1"))
+    (tmp_path / "taken").mkdir()
+    (tmp_path / "taken" / "thesis.tex").write_text("")
+    (tmp_path / "curve.csv").write_text("time\n1\n")
+    (tmp_path / "text.csv").write_text("time,flux,flux_error\n1,2,0.1\n2,bright,0.1\n")
+    before = contents(tmp_path)
+    monkeypatch.chdir(tmp_path)
+    try:
+        status = main(words)
+    except SystemExit as end:
+        status = end.code
+    printed = capsys.readouterr()
+    assert status == 2
+    assert message in printed.err
+    assert "Traceback" not in printed.err
+    assert printed.out == ""
+    assert contents(tmp_path) == before
+
+
+def test_an_earlier_plan_is_not_overwritten_by_another(file, tmp_path, capsys):
+    out = str(tmp_path / "out")
+    assert main(["lags", str(file), "--out", out]) == 0
+    kept = contents(Path(out))
+    file.write_text(FILE.replace("14.9", "15.9"))
+    assert main(["lags", str(file), "--out", out]) == 2
+    assert "--replace" in capsys.readouterr().err
+    assert contents(Path(out)) == kept
+    assert main(["lags", str(file), "--out", out, "--replace"]) == 0
+    assert contents(Path(out)) != kept
+
+
+def test_nothing_observable_is_status_1_with_advice(file, capsys, tmp_path):
+    north = FILE.replace('"-32:15:00"', '"+85:00:00"').replace('"-20:00:00"', '"+85:00:00"')
+    file.write_text(north)
+    assert main(["plan", str(file), "--out", str(tmp_path / "out"), "--quiet"]) == 1
+    assert "widen the limits" in capsys.readouterr().err
+    assert contents(tmp_path / "out") == {}
+
+
+@pytest.mark.skipif(not Path("/dev/full").exists(), reason="needs /dev/full")
+def test_a_full_disk_on_stdout_is_no_traceback(file):
+    with Path("/dev/full").open("w") as full:
+        done = subprocess.run(
+            [sys.executable, "-m", "planner", "lags", str(file)],
+            stdout=full, stderr=subprocess.PIPE, text=True, check=False,
+        )  # fmt: skip
+    assert "Traceback" not in done.stderr
+    assert done.returncode == 2
+
+
+@pytest.mark.skipif(shutil.which("head") is None, reason="needs head")
+def test_a_closed_pipe_is_no_traceback(file):
+    done = subprocess.run(
+        f"{sys.executable} -m planner check {file} | head -n 1",
+        shell=True, capture_output=True, text=True, check=False,
+    )  # fmt: skip
+    assert "Traceback" not in done.stderr

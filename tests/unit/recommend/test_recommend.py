@@ -1,0 +1,114 @@
+from dataclasses import replace
+
+import numpy as np
+import pytest
+
+from planner.model.campaign import Layout, SuccessRule
+from planner.model.plan import Help
+from planner.model.trial import Score, TrialTable
+from planner.recommend import changes_for, choose, helps_of, recommend
+
+RULE = SuccessRule(0.8, 0.3, 0.3, 0.5, 1.0)
+LAYOUTS = tuple(Layout(c, 1.0, length, 1) for c in (3.0, 6.0) for length in (60.0, 120.0))
+
+
+def score(layout, success, hours, trials=100, note=""):
+    half = 0.06 if trials else 0.0
+    return Score(
+        "One", layout, 20.0, 60.0, success, success - half, success + half, success, 0.05, 0.0, 0.1,
+        hours, hours / 2, trials, note,
+    )  # fmt: skip
+
+
+def table(reasons):
+    shape = (len(LAYOUTS), len(reasons))
+    nan = np.full(shape, np.nan)
+    reason = np.tile(np.array(reasons, dtype=np.int8), (len(LAYOUTS), 1))
+    return TrialTable(
+        "One", LAYOUTS, nan, nan, nan, nan, nan, np.zeros(shape, int), np.zeros(shape, int),
+        reason == 0, reason == 0, reason,
+    )  # fmt: skip
+
+
+def scores(*pairs, **options):
+    return [score(la, s, h, **options) for la, (s, h) in zip(LAYOUTS, pairs, strict=True)]
+
+
+def test_the_cheapest_layout_that_surely_reaches_the_goal_is_advised():
+    best, reached = choose(scores((0.5, 10), (0.87, 30), (0.95, 40), (0.99, 90)), RULE)
+    assert reached
+    assert best.hours == 30
+
+
+def test_a_layout_that_reaches_the_goal_by_chance_alone_is_not_enough():
+    best, reached = choose(scores((0.5, 10), (0.84, 30), (0.95, 40), (0.99, 90)), RULE)
+    assert reached
+    assert best.hours == 40
+
+
+def test_without_any_the_best_is_advised_and_the_cheaper_of_equals():
+    best, reached = choose(scores((0.5, 10), (0.6, 50), (0.6, 30), (0.2, 5)), RULE)
+    assert not reached
+    assert best.hours == 30
+
+
+def test_layouts_that_could_not_be_tried_are_never_advised():
+    rows = scores((0.0, 0), (0.0, 0), (0.0, 0), (0.0, 0), trials=0, note="never up")
+    assert choose(rows, RULE) == (None, False)
+    advice = recommend("One", rows, table([1]), RULE)
+    assert (advice.decision, advice.score, advice.why) == ("leave out", None, "never up")
+    assert not advice.scheduled
+
+
+def test_the_reason_names_what_trials_fail_of_and_what_helps_most():
+    rows = scores((0.5, 10), (0.6, 50), (0.6, 30), (0.2, 5))
+    helps = (Help("images of 20 min", 0.61, 0.01, 3.0), Help("seasons of 90 d", 0.75, 0.15, 9.0))
+    advice = recommend("One", rows, table([0, 5, 5, 4, 5, 0, 0, 0, 0, 7]), RULE, helps)
+    assert advice.decision == "risky"
+    assert advice.why == (
+        "no layout reaches the goal of 80%; this is the best; trials fail of: error too large "
+        "(30%), weak correlation (10%); what would help most: seasons of 90 d (success 75%)"
+    )
+    assert advice.helps[0].change == "seasons of 90 d"
+
+
+def test_a_hopeless_target_is_left_out_of_the_schedule():
+    advice = recommend("One", scores(*[(0.02, 10)] * 4), table([4] * 10), RULE)
+    assert advice.decision == "leave out"
+    assert "weak correlation (100%)" in advice.why
+
+
+def test_reasons_do_not_boast_of_changes_that_bring_nothing():
+    helps = (Help("images of 20 min", 0.5, 0.0, 3.0), Help("seasons of 90 d", 0.4, -0.1, 9.0))
+    advice = recommend("One", scores(*[(0.5, 10)] * 4), table([4] * 10), RULE, helps)
+    assert advice.why.endswith("none of the changes tried would help")
+
+
+def test_changes_differ_from_the_best_layout_in_one_thing_each(campaign):
+    best = score(Layout(6.0, 2.0, 60.0, 1), 0.5, 10)
+    campaign = replace(campaign, continuum=replace(campaign.continuum, cadence_nights=(2.0,)))
+    changes = {c.words: c for c in changes_for(campaign, best)}
+    assert list(changes) == [
+        "spectra every 3 nights",
+        "imaging every night",
+        "spectra of 80 min",
+        "images of 20 min",
+        "seasons of 90 d",
+        "2 seasons, the campaign a year longer",
+    ]
+    longer = changes["2 seasons, the campaign a year longer"]
+    assert longer.campaign.last_night - campaign.last_night == 365
+    assert changes["spectra of 80 min"].campaign.line.exposure_s == 4800
+
+
+def test_nobody_is_told_to_observe_more_often_than_nightly(campaign):
+    changes = changes_for(campaign, score(Layout(1.0, 1.0, 60.0, 1), 0.5, 10))
+    assert not any("every" in c.words for c in changes)
+
+
+def test_gains_are_differences_from_the_best_layout(campaign):
+    base = score(LAYOUTS[0], 0.5, 10)
+    change = changes_for(campaign, base)[0]
+    tried = [(change, score(LAYOUTS[0], 0.7, 25)), (change, score(LAYOUTS[0], 0, 0, trials=0))]
+    (help_,) = helps_of(base, tried)
+    assert (help_.gain, help_.hours) == (pytest.approx(0.2), pytest.approx(15))
