@@ -32,7 +32,9 @@ def main(arguments: Sequence[str] | None = None) -> int:
         parser.print_help()
         return 0
     try:
-        return _command(options.command)(options)
+        status = _command(options.command)(options)
+        sys.stdout.flush()
+        return status
     except PlannerError as error:
         print(f"planner: {error}", file=sys.stderr)  # noqa: T201
         return error.exit_status
@@ -40,8 +42,17 @@ def main(arguments: Sequence[str] | None = None) -> int:
         print("planner: interrupted; the same command goes on from here", file=sys.stderr)  # noqa: T201
         return INTERRUPTED
     except BrokenPipeError:
-        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+        _drop_output()
         return 0
+    except OSError as error:
+        _drop_output()
+        print(f"planner: the result cannot be printed: {error.strerror}", file=sys.stderr)  # noqa: T201
+        return 2
+
+
+def _drop_output() -> None:
+    """Let what is still waiting for standard output go nowhere, so that Python can end quietly."""
+    os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
 
 
 def _command(name: str) -> Callable[[argparse.Namespace], int]:

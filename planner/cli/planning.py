@@ -57,8 +57,8 @@ def score(options: Namespace) -> int:
         table_text(
             [
                 "target",
-                "spectra every [n]",
-                "imaging every [n]",
+                "nights per spectrum",
+                "per image",
                 "seasons",
                 "spectra",
                 "success",
@@ -159,8 +159,8 @@ def plan(options: Namespace) -> int:
             [
                 "target",
                 "decision",
-                "spectra every [n]",
-                "imaging every [n]",
+                "nights per spectrum",
+                "per image",
                 "seasons",
                 "success",
                 "90 % bounds",

@@ -63,7 +63,7 @@ def compare_scenarios(scenarios: Sequence[Scenario]) -> tuple[ScenarioResult, ..
     for scenario, lags, false in zip(scenarios, right, wrong, strict=True):
         shared = min(lags.size, right[0].size)
         gain = lags[:shared] - right[0][:shared]
-        half = Z_90 * float(np.std(gain, ddof=1)) / np.sqrt(shared) if shared > 1 else np.inf
+        half = Z_90 * float(np.std(gain, ddof=1) / np.sqrt(shared)) if shared > 1 else np.inf
         mean = float(np.mean(gain))
         kept = [r for r in scenario.recommendations if r.scheduled]
         results.append(

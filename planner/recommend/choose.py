@@ -66,7 +66,16 @@ def recommend(
         )
         return Recommendation(target, "observe", best, why, ())
     ranked = tuple(sorted(helps, key=lambda h: (-h.gain, h.hours)))
-    why = f"no layout reaches the goal of {rule.goal:.0%}; this is the best; {_limits(table, best)}"
+    if best.success >= rule.goal:
+        why = (
+            f"no layout is shown to reach the goal of {rule.goal:.0%}: {best.trials} trials leave "
+            f"{best.success_lo:.0%} to {best.success_hi:.0%}; more trials may settle it"
+        )
+    else:
+        why = (
+            f"no layout reaches the goal of {rule.goal:.0%}; this is the best; "
+            f"{_limits(table, best)}"
+        )
     if best.note:
         why += f"; {best.note}"
     if ranked and ranked[0].gain > 0:

@@ -26,7 +26,7 @@ def page(plan: Plan, figures: dict[str, bytes], defaults: list[tuple[str, str, s
     import jinja2
 
     environment = jinja2.Environment(autoescape=True, undefined=jinja2.StrictUndefined)
-    environment.filters["percent"] = lambda share: f"{100 * share:.0f} %"
+    environment.filters["percent"] = lambda share: f"{100 * share:.0f}\u00a0%"
     environment.filters["sig2"] = lambda value: f"{float(f'{value:.2g}'):g}"
     template = environment.from_string((files("planner.report") / "page.html").read_text("utf-8"))
     images = {name: f"data:image/png;base64,{b64encode(b).decode()}" for name, b in figures.items()}
@@ -62,7 +62,7 @@ def _summary(plan: Plan) -> list[str]:
     wrong = sum(s.false_claims for s in plan.executed.values())
     goal = plan.campaign.success.goal
     sentences = [
-        f"{met} of {total} targets reach the goal of {goal:.0%} success on their own; "
+        f"{met} of {total} targets reach the goal of {100 * goal:.0f}\u00a0% success on their own; "
         f"{len(kept)} are scheduled.",
     ]
     if kept:

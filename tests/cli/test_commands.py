@@ -2,7 +2,6 @@
 
 import json
 import os
-import shutil
 import signal
 import subprocess
 import sys
@@ -125,8 +124,8 @@ def test_scheduled_visits_stay_in_windows_and_apart(planned):
     )
     assert inside.groupby([merged["target"], merged["stream"], merged["night"]]).any().all()
     assert len(merged.groupby(["target", "stream", "night"])) == len(schedule)
-    for _, visits in schedule.groupby("telescope"):
-        visits = visits.sort_values("start_utc")
+    for _, of_telescope in schedule.groupby("telescope"):
+        visits = of_telescope.sort_values("start_utc")
         assert (visits["start_utc"].iloc[1:].values >= visits["end_utc"].iloc[:-1].values).all()
 
 
@@ -231,7 +230,9 @@ def test_help_is_instant_and_loads_no_science():
         "except SystemExit: pass\n"
         "print([m for m in ('numpy', 'astropy', 'numba', 'matplotlib') if m in sys.modules])"
     )
-    loaded = subprocess.run([sys.executable, "-c", script], capture_output=True, text=True, check=True)
+    loaded = subprocess.run(
+        [sys.executable, "-c", script], capture_output=True, text=True, check=True
+    )
     assert loaded.stdout.splitlines()[-1] == "[]"
 
 
@@ -328,7 +329,6 @@ def test_nothing_observable_is_status_1_with_advice(file, capsys, tmp_path):
     assert contents(tmp_path / "out") == {}
 
 
-@pytest.mark.skipif(not Path("/dev/full").exists(), reason="needs /dev/full")
 def test_a_full_disk_on_stdout_is_no_traceback(file):
     with Path("/dev/full").open("w") as full:
         done = subprocess.run(
@@ -339,7 +339,6 @@ def test_a_full_disk_on_stdout_is_no_traceback(file):
     assert done.returncode == 2
 
 
-@pytest.mark.skipif(shutil.which("head") is None, reason="needs head")
 def test_a_closed_pipe_is_no_traceback(file):
     done = subprocess.run(
         f"{sys.executable} -m planner check {file} | head -n 1",

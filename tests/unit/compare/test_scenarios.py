@@ -45,7 +45,10 @@ def test_equal_scenarios_cannot_be_told_apart():
 
 def test_wrong_claims_are_counted_and_targets_left_out_are_not():
     a, b = compare_scenarios(
-        [scenario("a", [0, 0, 1, 1], [1, 0, 1, 1]), scenario("b", [1, 1, 1, 1], decision="leave out")]
+        [
+            scenario("a", [0, 0, 1, 1], [1, 0, 1, 1]),
+            scenario("b", [1, 1, 1, 1], decision="leave out"),
+        ]
     )
     assert a.wrong_claims == 0.25
     assert (b.lags, b.hours) == (0.0, 0.0)

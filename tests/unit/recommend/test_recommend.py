@@ -72,6 +72,16 @@ def test_the_reason_names_what_trials_fail_of_and_what_helps_most():
     assert advice.helps[0].change == "seasons of 90 d"
 
 
+def test_too_few_trials_are_said_and_not_taken_for_failure():
+    rows = scores((0.5, 10), (0.6, 50), (0.82, 30), (0.2, 5), trials=20)
+    advice = recommend("One", rows, table([0] * 20), RULE)
+    assert advice.decision == "risky"
+    assert advice.why.startswith(
+        "no layout is shown to reach the goal of 80%: 20 trials leave 76% to 88%; more trials"
+    )
+    assert "fail of" not in advice.why
+
+
 def test_a_hopeless_target_is_left_out_of_the_schedule():
     advice = recommend("One", scores(*[(0.02, 10)] * 4), table([4] * 10), RULE)
     assert advice.decision == "leave out"

@@ -97,12 +97,11 @@ def test_an_easy_target_succeeds_and_a_noisy_one_does_not(campaign, prospect):
     setting = replace(
         setting_of(campaign), simulation=replace(campaign.simulation, trials=20, resamples=40)
     )
-    noisy = replace(
-        prospect,
-        line=replace(prospect.line, flux_error=np.full(181, 1.0)),
-    )
-    good, bad = run([Job(setting, prospect, LAYOUTS[:1]), Job(setting, noisy, LAYOUTS[:1])])
-    assert scores_of(prospect, good)[0].success > 0.7
+    lively = replace(prospect.forecast, lag_obs_d=8.0, amplitude_mag=0.4, timescale_obs_d=60.0)
+    easy = replace(prospect, forecast=lively)
+    noisy = replace(easy, line=replace(prospect.line, flux_error=np.full(181, 1.0)))
+    good, bad = run([Job(setting, easy, LAYOUTS[:1]), Job(setting, noisy, LAYOUTS[:1])])
+    assert scores_of(easy, good)[0].success > 0.7
     assert scores_of(noisy, bad)[0].success < 0.3
 
 
