@@ -1,7 +1,9 @@
 """Whole commands: what they print, what they write, how they end."""
 
+import errno
 import json
 import os
+import shutil
 import signal
 import subprocess
 import sys
@@ -327,6 +329,29 @@ def test_nothing_observable_is_status_1_with_advice(file, capsys, tmp_path):
     assert main(["plan", str(file), "--out", str(tmp_path / "out"), "--quiet"]) == 1
     assert "widen the limits" in capsys.readouterr().err
     assert contents(tmp_path / "out") == {}
+
+
+@pytest.mark.parametrize("command", ["lags", "nights"])
+def test_a_full_disk_is_one_message_and_leaves_nothing_half_written(
+    file, tmp_path, monkeypatch, capsys, command
+):
+    out = tmp_path / "out"
+
+    def full(_):
+        raise OSError(errno.ENOSPC, os.strerror(errno.ENOSPC))
+
+    assert main(["lags", str(file), "--out", str(out)]) == 0
+    kept = contents(out)
+    shutil.rmtree(out)
+    monkeypatch.setattr("os.fsync", full)
+    assert main([command, str(file), "--out", str(out)]) == 2
+    printed = capsys.readouterr()
+    assert "cannot be written: No space left on device" in printed.err
+    assert printed.err.count("\n") == 1
+    assert [p.name for p in out.iterdir()] == []
+    monkeypatch.undo()
+    assert main(["lags", str(file), "--out", str(out)]) == 0
+    assert contents(out) == kept
 
 
 def test_a_full_disk_on_stdout_is_no_traceback(file):
