@@ -28,7 +28,7 @@ from planner.model.plan import Help, Plan, Recommendation, SiteSky
 from planner.model.target import Forecast, Target
 from planner.model.trial import Prospect, Score, TrialTable
 from planner.recommend import Change, changes_for, choose, helps_of, recommend
-from planner.schedule import Request, assign, planned, requests_of, used_nights
+from planner.schedule import Request, assign, planned, requests_of, time_spent, used_nights
 from planner.scoring import (
     Job,
     Progress,
@@ -40,6 +40,7 @@ from planner.scoring import (
     scores_of,
     setting_of,
     sky_of_trial,
+    with_spectra,
 )
 from planner.sky import nights_at, windows_of
 
@@ -72,21 +73,40 @@ def forecast_targets(campaign: Campaign) -> tuple[Forecast, ...]:
 def _forecast(campaign: Campaign, target: Target) -> Forecast:
     return forecast(
         target,
-        band=campaign.continuum.instrument.reference_band,
+        band=continuum_band(campaign),
         relations=dict(campaign.relations),
         cosmology=campaign.cosmology,
         error_below=campaign.success.error_below,
     )
 
 
+def continuum_band(campaign: Campaign) -> str:
+    """Return the band whose mix of AGN and host the continuum has; V where spectra give it."""
+    feeds = campaign.continuum.feeds
+    return getattr(feeds[0].instrument, "band", "V") if feeds else "V"
+
+
 def observe_sky(campaign: Campaign) -> dict[str, SiteSky]:
     """Return the nights of each site and the windows of all targets in them."""
     ra = np.array([t.ra_deg for t in campaign.targets])
     dec = np.array([t.dec_deg for t in campaign.targets])
+    limits = campaign.limits
+    no_moon = replace(limits, moon_separation_deg=180.0)
+    limited = {
+        campaign.site(feed.telescope).name
+        for stream in (campaign.line, campaign.continuum)
+        for feed in stream.feeds
+        if feed.moon_illumination_max < 1.0
+    }
     skies = {}
     for site in campaign.sites:
-        nights = nights_at(site, campaign.first_night, campaign.last_night, campaign.limits)
-        skies[site.name] = SiteSky(nights, windows_of(ra, dec, site, nights, campaign.limits))
+        nights = nights_at(site, campaign.first_night, campaign.last_night, limits)
+        dark = (ra, dec) if site.name in limited else (ra[:0], dec[:0])
+        skies[site.name] = SiteSky(
+            nights,
+            windows_of(ra, dec, site, nights, limits),
+            windows_of(*dark, site, nights, no_moon),
+        )
     return skies
 
 
@@ -186,20 +206,33 @@ def execute(
 ) -> dict[str, Score]:
     """Run the schedule of all targets under each trial's weather and score what is left of it."""
     setting = setting_of(campaign)
-    used: dict[tuple[str, str], list[Any]] = {(r.target, r.stream): [] for r in requests}
+    kept = [
+        (prospect, advice.score.layout)
+        for prospect, advice in zip(prospects, recommendations, strict=True)
+        if advice.scheduled and advice.score is not None
+    ]
+    used: dict[str, list[Used]] = {prospect.forecast.name: [] for prospect, _ in kept}
     for trial in range(setting.simulation.trials):
-        clear = sky_of_trial(setting, trial)
-        visits = assign(campaign, requests, clear)
-        for request, nights in zip(requests, used_nights(requests, visits), strict=True):
-            used[request.target, request.stream].append(nights)
-        progress("weather over the schedule", trial + 1, setting.simulation.trials)
-    jobs = []
-    for prospect, advice in zip(prospects, recommendations, strict=True):
-        if advice.scheduled and advice.score is not None:
-            of_target: Used = tuple(
-                zip(used[advice.target, "continuum"], used[advice.target, "line"], strict=True)
+        visits = assign(campaign, requests, sky_of_trial(setting, trial))
+        nights = dict(
+            zip(
+                ((r.target, r.stream, r.feed) for r in requests),
+                used_nights(requests, visits),
+                strict=True,
             )
-            jobs.append(Job(setting, prospect, (advice.score.layout,), of_target))
+        )
+        for prospect, _ in kept:
+            name = prospect.forecast.name
+            imaging, line = (
+                tuple(nights[name, stream.kind, i] for i in range(len(stream.feeds)))
+                for stream in (campaign.continuum, campaign.line)
+            )
+            used[name].append(with_spectra(prospect, imaging, line))
+        progress("weather over the schedule", trial + 1, setting.simulation.trials)
+    jobs = [
+        Job(setting, prospect, (layout,), tuple(used[prospect.forecast.name]))
+        for prospect, layout in kept
+    ]
     tables = score_targets(
         jobs, workers=workers, store=store, progress=progress, label="schedule under weather"
     )
@@ -260,9 +293,19 @@ def make_plan(
         recommendations=advice,
         visits=tuple(visits),
         unplaced=tuple(unplaced),
+        time_spent=time_spent(campaign, visits, dark_hours(skies)),
         executed=executed,
         run=run_record(reading),
     )
+
+
+def dark_hours(skies: dict[str, SiteSky]) -> dict[str, float]:
+    """Return, by site, the mean dark hours of the campaign's nights; none count as 0."""
+    means = {}
+    for site, sky in skies.items():
+        hours = (sky.nights.dark_end_mjd - sky.nights.dark_start_mjd) * 24
+        means[site] = float(np.nan_to_num(hours).mean())
+    return means
 
 
 def no_window(campaign: Campaign) -> str:
@@ -299,6 +342,8 @@ def write_plan(plan: Plan, reading: Reading, folder: Path) -> None:
         "scores": export.scores_table(plan.scores),
         "recommendation": export.recommendation_table(plan.recommendations, plan.executed),
         "schedule": schedule,
+        "epochs": export.epochs_table(plan.prospects),
+        "time": export.time_table(plan.time_spent),
     }
     for name, table in tables.items():
         export.write_ecsv(table, folder / f"{name}.ecsv")

@@ -3,7 +3,6 @@
 import os
 import socket
 import tempfile
-from dataclasses import replace
 
 import numpy as np
 import pytest
@@ -15,9 +14,12 @@ for name in ("NO_COLOR", "COLUMNS"):
 
 from planner.model.campaign import Campaign, Cosmology, Simulation, SuccessRule
 from planner.model.observatory import (
-    Instrument,
+    Feed,
+    KnownCase,
     Limits,
+    LineMeasurement,
     Site,
+    SkyQuality,
     Stream,
     Telescope,
     TimeAllotment,
@@ -25,7 +27,7 @@ from planner.model.observatory import (
 )
 from planner.model.sky import Season
 from planner.model.target import Forecast, Magnitude, Target
-from planner.model.trial import Prospect, StreamNights
+from planner.model.trial import FeedNights, Prospect
 
 
 class NetworkRefusedError(RuntimeError):
@@ -55,13 +57,25 @@ FIRST_NIGHT = 61465  # 2027-03-01
 
 @pytest.fixture(scope="session")
 def site():
-    return Site("Ridge", -30.4, -70.9, 2300.0, None, WeatherClimate((0.75,) * 12, 2.5))
+    sky = SkyQuality(1.2, (("V", 21.8),), (("V", 0.15),))
+    return Site("Ridge", -30.4, -70.9, 2300.0, None, WeatherClimate((0.75,) * 12, 2.5), sky)
+
+
+def feed(telescope, **options):
+    """One telescope's part in a stream, from a known signal-to-noise."""
+    known = KnownCase(options.pop("signal_to_noise"), "V", 16.0, 300.0, 1.2, 0.2, 0.0)
+    values = {
+        "instrument": known, "floor": 0.01, "exposure_s": 300.0, "wanted_error": 0.0,
+        "longest_s": 0.0, "exposures": 1, "read_out_s": 60.0, "overhead_s": 0.0,
+        "standards_s": 0.0, "moon_illumination_max": 1.0,
+    } | options  # fmt: skip
+    return Feed(telescope, **values)
 
 
 @pytest.fixture(scope="session")
 def campaign(site):
     """Two easy targets, one telescope per stream, one season of half a year."""
-    instrument = Instrument(120.0, "V", 16.0, 300.0, 1.2, 0.2, 0.01, 0.15)
+    free = TimeAllotment()
     return Campaign(
         name="Small",
         first_night=FIRST_NIGHT,
@@ -73,17 +87,19 @@ def campaign(site):
         ),
         sites=(site,),
         telescopes=(
-            Telescope("Big", "Ridge", 2.0, 120.0, TimeAllotment()),
-            Telescope("Small", "Ridge", 0.5, 60.0, TimeAllotment()),
+            Telescope("Big", "Ridge", 2.0, 0.3, 60.0, 60.0, 0.0, free),
+            Telescope("Small", "Ridge", 0.5, 0.3, 30.0, 30.0, 0.0, free),
         ),
-        continuum=Stream("continuum", "Small", (1.0,), 300.0, 60.0, instrument),
+        continuum=Stream(
+            "continuum", (1.0,), (feed("Small", signal_to_noise=120.0),), False, free, None
+        ),
         line=Stream(
             "line",
-            "Big",
             (3.0, 6.0),
-            1200.0,
-            300.0,
-            replace(instrument, signal_to_noise=30.0, floor=0.02),
+            (feed("Big", signal_to_noise=30.0, floor=0.02, exposure_s=1200.0, read_out_s=300.0),),
+            False,
+            free,
+            LineMeasurement(None, None),
         ),
         limits=Limits(2.0, -18.0, 30.0),
         season_lengths_d=(60.0, 120.0),
@@ -123,19 +139,24 @@ def forecast():
 def nights():
     """Return a maker of nights on offer: every night, three hours about local midnight."""
 
-    def make(count, *, error=0.02, visit_s=1800.0, keep=slice(None)):
+    def make(count, *, error=0.02, visit_s=1800.0, keep=slice(None), **options):
         night = np.arange(count)[keep]
         middle = FIRST_NIGHT + night + 1.2
-        return StreamNights(
-            site="Ridge",
+        values = {
+            "telescope": "Big", "site": "Ridge", "in_spectra_of": None, "scale_error": 0.0,
+            "exposure_s": 1200.0, "standards_s": 0.0, "reached": True,
+        } | options  # fmt: skip
+        return FeedNights(
             night=night,
             window_start_mjd=middle - 1.5 / 24,
             window_end_mjd=middle + 1.5 / 24,
             best_mjd=middle + 0.1 / 24,
             airmass=np.full(night.size, 1.1),
-            moon_separation_deg=np.full(night.size, 90.0),
+            sky_ab_mag=np.full(night.size, 21.5),
             flux_error=np.full(night.size, error),
+            signal_to_noise=np.full(night.size, 50.0),
             visit_s=visit_s,
+            **values,
         )
 
     return make
@@ -146,7 +167,8 @@ def prospect(forecast, nights):
     """One target visible on every night of half a year."""
     return Prospect(
         forecast,
-        nights(181),
-        nights(181, error=0.01, visit_s=420.0),
+        (nights(181),),
+        (nights(181, error=0.01, visit_s=420.0, telescope="Small", exposure_s=300.0),),
         (Season(0, 0, 180, 181, 0),),
+        "",
     )

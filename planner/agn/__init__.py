@@ -9,7 +9,12 @@ Lags come out of radius-luminosity relations in the rest frame; only `Forecast.l
 from planner.agn.bands import BANDS, Band
 from planner.agn.forecast import forecast
 from planner.agn.lines import LINES, Line, default_line
-from planner.agn.luminosity import agn_log_luminosity, host_fraction, magnitude_in
+from planner.agn.luminosity import (
+    ab_magnitude_at,
+    agn_log_luminosity,
+    host_fraction,
+    magnitude_in,
+)
 from planner.agn.mass import log_mass, log_virial_product, mass_error_dex
 from planner.agn.relations import RELATIONS, Relation, lag_rest, relation_names
 from planner.agn.variability import damped_random_walk
@@ -21,6 +26,7 @@ __all__ = [
     "Band",
     "Line",
     "Relation",
+    "ab_magnitude_at",
     "agn_log_luminosity",
     "damped_random_walk",
     "default_line",

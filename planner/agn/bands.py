@@ -2,41 +2,15 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from functools import lru_cache
 
 import numpy as np
 
+from planner.base.bands import BANDS, Band
+
 __all__ = ["BANDS", "Band", "extinction_mag"]
 
 R_V = 3.1
-
-
-@dataclass(frozen=True, slots=True)
-class Band:
-    """One photometric band."""
-
-    pivot_a: float
-    """Pivot wavelength, angstrom."""
-    ab_minus_vega_mag: float
-    """What to add to a magnitude of this band to have it on the AB scale."""
-
-
-BANDS = {
-    "u": Band(3557.0, 0.0),
-    "g": Band(4703.0, 0.0),
-    "r": Band(6176.0, 0.0),
-    "i": Band(7490.0, 0.0),
-    "z": Band(8947.0, 0.0),
-    "B": Band(4371.0, -0.09),
-    "V": Band(5478.0, 0.02),
-    "R": Band(6498.0, 0.21),
-}
-"""SDSS u g r i z, whose magnitudes are taken as AB, and Bessell B V R, on the Vega scale.
-
-Pivot wavelengths of the standard transmission curves to the nearest angstrom, and Vega-to-AB
-offsets of Blanton & Roweis (2007, AJ 133, 734, table 1); both from memory.
-"""
 
 
 def extinction_mag(wavelength_a: float, ebv_mag: float) -> float:

@@ -18,6 +18,7 @@ from planner.model.campaign import Cosmology
 from planner.model.target import Target
 
 __all__ = [
+    "ab_magnitude_at",
     "absolute_ab_mag",
     "agn_log_luminosity",
     "apparent_ab_mag",
@@ -125,18 +126,26 @@ def magnitude_in(target: Target, band: str, cosmology: Cosmology) -> float:
         Used only where the target has no magnitude.
     """
     to = BANDS[band]
+    return ab_magnitude_at(target, to.pivot_a, cosmology) - to.ab_minus_vega_mag
+
+
+def ab_magnitude_at(target: Target, wavelength_a: float, cosmology: Cosmology) -> float:
+    """Return the AB magnitude of the continuum of AGN and host at an observed wavelength.
+
+    As for `magnitude_in`; lines are left out.
+    """
     if target.magnitude is not None:
         given = BANDS[target.magnitude.band]
         ab_mag = _unreddened_ab_mag(target) - 2.5 * ALPHA_NU * math.log10(
-            given.pivot_a / to.pivot_a
+            given.pivot_a / wavelength_a
         )
     else:
         log_agn = agn_log_luminosity(target, HOST_WAVELENGTH_A, cosmology)
         log_total = log_agn - math.log10(1 - host_fraction(target, cosmology))
         ab_mag = apparent_ab_mag(
-            log_total, HOST_WAVELENGTH_A, target.redshift, to.pivot_a, cosmology
+            log_total, HOST_WAVELENGTH_A, target.redshift, wavelength_a, cosmology
         )
-    return ab_mag + extinction_mag(to.pivot_a, target.ebv_mag) - to.ab_minus_vega_mag
+    return ab_mag + extinction_mag(wavelength_a, target.ebv_mag)
 
 
 def luminosity_error_dex(target: Target, cosmology: Cosmology) -> float:

@@ -1,4 +1,4 @@
-"""Ground floor: errors, quantities, time, random streams, files, workers, provenance.
+"""Ground floor: errors, quantities, bands, time, random streams, files, workers, provenance.
 
-In: plain values. Out: plain values. Nothing here knows astronomy or the campaign file.
+In: plain values. Out: plain values. Nothing here knows sites, targets or the campaign file.
 """

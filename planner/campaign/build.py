@@ -6,14 +6,20 @@ from collections.abc import Mapping, Sequence
 from typing import TypeVar
 
 from planner.campaign.parts import Parts
-from planner.campaign.schema import LINES, LimitsSection, SimulationSection, TimeSection
-from planner.campaign.settle import KINDS, Choices, reference_for, stream_of
+from planner.campaign.schema import (
+    LINES,
+    LimitsSection,
+    SimulationSection,
+    SiteSection,
+    TimeSection,
+)
+from planner.campaign.settle import KINDS, Choices, stream_of
+from planner.campaign.streams import stream_record
 from planner.model.campaign import Campaign, Cosmology, Simulation, SuccessRule
 from planner.model.observatory import (
-    Instrument,
     Limits,
     Site,
-    Stream,
+    SkyQuality,
     Telescope,
     TimeAllotment,
     WeatherClimate,
@@ -50,14 +56,17 @@ def build(
     cosmology = _sound(parts.cosmology)
     if programme.name is None:
         choices.take("campaign.name", file_name, "the file's name")
-    streams = {kind: _stream(parts, choices, kind) for kind in KINDS}
+    streams = {
+        kind: stream_record(parts, choices, kind, _allotment(_time_of(parts, kind)))
+        for kind in KINDS
+    }
     return Campaign(
         name=programme.name or file_name,
         first_night=programme.first_night,
         last_night=programme.last_night,
         seed=programme.seed,
         targets=tuple(targets),
-        sites=_sites(parts),
+        sites=_sites(parts, choices),
         telescopes=_telescopes(parts, choices),
         continuum=streams["continuum"],
         line=streams["line"],
@@ -82,7 +91,7 @@ def _sound(part: Part | None) -> Part:
     return part
 
 
-def _sites(parts: Parts) -> tuple[Site, ...]:
+def _sites(parts: Parts, choices: Choices) -> tuple[Site, ...]:
     return tuple(
         Site(
             name=site.name,
@@ -91,9 +100,37 @@ def _sites(parts: Parts) -> tuple[Site, ...]:
             elevation_m=site.elevation,
             time_zone=site.time_zone,
             weather=WeatherClimate(site.weather.clear.fractions(), site.weather.bad_spell),
+            sky=_sky(site, choices),
         )
         for site in parts.known_sites()
     )
+
+
+_DARK_MAG = (
+    ("u", 22.8), ("B", 22.7), ("g", 22.2), ("V", 21.8), ("r", 21.2), ("R", 20.9), ("i", 20.5),
+    ("z", 19.6),
+)  # fmt: skip
+"""A good site far from towns, away from solar maximum: near Benn & Ellison (1998) for B V R and
+the medians of a large southern survey for u to z; from memory."""
+_EXTINCTION_MAG = (
+    ("u", 0.50), ("B", 0.25), ("g", 0.20), ("V", 0.14), ("r", 0.10), ("R", 0.10), ("i", 0.06),
+    ("z", 0.05),
+)  # fmt: skip
+"""A site at about 2000 m; from memory."""
+
+
+def _sky(site: SiteSection, choices: Choices) -> SkyQuality:
+    known = {}
+    for name, usual, words in (
+        ("dark_sky", _DARK_MAG, "a good dark site"),
+        ("extinction", _EXTINCTION_MAG, "a site at about 2000 m"),
+    ):
+        given = getattr(site, name)
+        known[name] = given.pairs() if given is not None and given.pairs() else usual
+        if known[name] is usual:
+            listed = ", ".join(f"{band}: {value:g}" for band, value in usual)
+            choices.take(f"{choices.key_of_site(site.name)}.{name}", f"{{{listed}}}", words)
+    return SkyQuality(site.seeing, known["dark_sky"], known["extinction"])
 
 
 def _telescopes(parts: Parts, choices: Choices) -> tuple[Telescope, ...]:
@@ -102,7 +139,10 @@ def _telescopes(parts: Parts, choices: Choices) -> tuple[Telescope, ...]:
             name=telescope.name,
             site=choices.site_of[telescope.name],
             aperture_m=telescope.aperture,
+            obstruction=telescope.obstruction,
             slew_s=telescope.slew,
+            acquisition_s=telescope.acquisition,
+            technical_loss=telescope.technical_loss,
             time=_allotment(telescope.time or _sound(parts.time)),
         )
         for telescope in parts.known_telescopes()
@@ -111,29 +151,15 @@ def _telescopes(parts: Parts, choices: Choices) -> tuple[Telescope, ...]:
 
 def _allotment(time: TimeSection) -> TimeAllotment:
     blocked = tuple(blocked.run() for blocked in time.blocked)
-    return TimeAllotment(time.hours, time.nights, time.hours_per_night, blocked)
-
-
-def _stream(parts: Parts, choices: Choices, kind: str) -> Stream:
-    section, telescope = _sound(stream_of(parts, kind)), choices.telescope_of[kind]
-    reference = reference_for(kind, telescope.aperture, section, choices)
-    return Stream(
-        kind=kind,
-        telescope=telescope.name,
-        cadence_nights=choices.cadences[kind],
-        exposure_s=section.exposure,
-        overhead_s=section.overhead,
-        instrument=Instrument(
-            signal_to_noise=reference.value,
-            reference_band=reference.band,
-            reference_mag=reference.magnitude,
-            reference_s=reference.exposure,
-            reference_airmass=reference.airmass,
-            sky_share=reference.sky_share,
-            floor=section.floor,
-            extinction_mag=section.extinction,
-        ),
+    return TimeAllotment(
+        time.hours, time.nights, time.hours_per_night, time.least_hours_per_night or 0.0, blocked
     )
+
+
+def _time_of(parts: Parts, kind: str) -> TimeSection:
+    """Return the caps on a stream alone; none where none are given."""
+    section = stream_of(parts, kind)
+    return section.time if section and section.time else TimeSection()
 
 
 def _limits(section: LimitsSection) -> Limits:

@@ -2,10 +2,11 @@
 
 from __future__ import annotations
 
+from planner.campaign.check_feeds import check_feeds, feeds_of
 from planner.campaign.parts import Parts
 from planner.campaign.schema import Months, TimeSection
 from planner.campaign.sections import nearest
-from planner.campaign.settle import KINDS, Choices, stream_of
+from planner.campaign.settle import Choices
 from planner.campaign.sheet import Sheet
 from planner.campaign.yaml_nodes import Place
 
@@ -21,7 +22,7 @@ def check(sheet: Sheet, parts: Parts, choices: Choices) -> None:
     _check_references(sheet, parts)
     _check_weather(sheet, parts)
     _check_candidates(sheet, parts, choices)
-    _check_visits(sheet, parts, choices)
+    check_feeds(sheet, parts, choices)
 
 
 def _check_dates(sheet: Sheet, parts: Parts) -> None:
@@ -55,11 +56,9 @@ def _check_references(sheet: Sheet, parts: Parts) -> None:
     names = [t.name for t in parts.known_telescopes()]
     if not names or len(names) < len(parts.telescopes):
         return
-    for kind in KINDS:
-        section = stream_of(parts, kind)
-        if section and section.telescope is not None and section.telescope not in names:
-            path = ("streams", kind, "telescope")
-            _unknown(sheet, path, section.telescope, names, "telescope")
+    for path, feed in feeds_of(parts):
+        if feed.telescope is not None and feed.telescope not in names:
+            _unknown(sheet, (*path, "telescope"), feed.telescope, names, "telescope")
 
 
 def _unknown(sheet: Sheet, path: Place, name: str, known: list[str], kind: str) -> None:
@@ -108,19 +107,3 @@ def _check_candidates(sheet: Sheet, parts: Parts, choices: Choices) -> None:
             found = f"a cadence of {cadences[-1]:g} nights in a season of {shortest:g} d"
             path = ("streams", kind, "cadence")
             sheet.fault(path, found, "cadences no longer than the shortest season")
-
-
-def _check_visits(sheet: Sheet, parts: Parts, choices: Choices) -> None:
-    """Refuse visits that do not fit into a night's allotment."""
-    for kind, telescope in choices.telescope_of.items():
-        section, time = stream_of(parts, kind), telescope.time or parts.time
-        if section is None or time is None:
-            continue
-        hours = (section.exposure + section.overhead + telescope.slew) / 3600
-        limits = [h for h in (time.hours_per_night, time.hours) if h is not None]
-        if limits and hours > min(limits):
-            found = (
-                f"a visit takes {hours:.3g} h with overhead and slew, "
-                f"and {telescope.name} is ours for {min(limits):g} h"
-            )
-            sheet.fault(("streams", kind, "exposure"), found, "a shorter exposure or more time")

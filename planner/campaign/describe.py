@@ -10,7 +10,15 @@ from typing import Any
 from planner.campaign.fields import MJD_OF_DATE_ZERO
 from planner.campaign.read import Reading
 from planner.model.campaign import Campaign
-from planner.model.observatory import Site, Stream, Telescope
+from planner.model.observatory import (
+    Camera,
+    Feed,
+    KnownCase,
+    Site,
+    Stream,
+    Telescope,
+    TimeAllotment,
+)
 from planner.model.target import Target
 
 __all__ = ["as_dict", "describe"]
@@ -86,33 +94,99 @@ def _site(site: Site) -> Iterator[str]:
         months = f"{100 * clear[0]:g} %"
     else:
         months = ", ".join(f"{m} {100 * p:g} %" for m, p in zip(_MONTHS, clear, strict=True))
+    yield f"seeing {site.sky.seeing_arcsec:g} arcsec"
+    for words, pairs in (("dark sky", site.sky.dark_mag), ("extinction", site.sky.extinction_mag)):
+        yield f"{words}: {', '.join(f'{band} {value:g}' for band, value in pairs)}"
     yield f"clear nights: {months}; bad spells of {site.weather.bad_spell_nights:g} nights"
 
 
 def _telescope(telescope: Telescope) -> Iterator[str]:
-    yield f"{telescope.aperture_m:g} m at {telescope.site}, slew {_time(telescope.slew_s)}"
-    time = telescope.time
+    yield (
+        f"{telescope.aperture_m:g} m at {telescope.site}, obstruction "
+        f"{100 * telescope.obstruction:g} %, slew {_time(telescope.slew_s)}, acquisition "
+        f"{_time(telescope.acquisition_s)}, {100 * telescope.technical_loss:g} % technical loss"
+    )
+    yield f"time: {_time_limits(telescope.time) or 'every night, all night'}"
+
+
+def _time_limits(time: TimeAllotment) -> str:
     limits = [
         f"{time.hours:g} h in all" if time.hours is not None else "",
         f"{time.nights} nights" if time.nights is not None else "",
         f"{time.hours_per_night:g} h a night" if time.hours_per_night is not None else "",
+        f"at least {time.least_hours_per_night:g} h charged a night"
+        if time.least_hours_per_night
+        else "",
         *(f"not {_date(first)} to {_date(last)}" for first, last in time.blocked),
     ]
-    yield f"time: {', '.join(filter(None, limits)) or 'every night, all night'}"
+    return ", ".join(filter(None, limits))
 
 
 def _stream(stream: Stream) -> Iterator[str]:
-    known = stream.instrument
-    yield f"telescope {stream.telescope}"
     yield f"candidate cadences: {', '.join(f'{c:g} d' for c in stream.cadence_nights)}"
-    yield f"exposure {_time(stream.exposure_s)}, overhead {_time(stream.overhead_s)}"
-    per = " per angstrom" if stream.kind == "line" else ""
+    if stream.in_spectra:
+        yield "measured in the line's spectra, whose scale error it shares"
+    for feed in stream.feeds:
+        yield f"telescope {feed.telescope}"
+        yield from (f"  {line}" for line in _feed(feed, stream.kind))
+    time = _time_limits(stream.time)
+    if time:
+        yield f"time of this stream: {time}"
+    if stream.measurement:
+        beside, narrow = stream.measurement.continuum_window_a, stream.measurement.narrow_width_a
+        yield f"continuum beside the line from {_or(beside, 'as much as the line takes')}"
+        if narrow:
+            yield f"scaled with narrow lines of equivalent width {narrow:g} A"
+
+
+def _or(width_a: float | None, otherwise: str) -> str:
+    return otherwise if width_a is None else f"{width_a:g} A in all"
+
+
+def _feed(feed: Feed, kind: str) -> Iterator[str]:
+    known = feed.instrument
+    if feed.exposure_s is None:
+        yield (
+            f"exposure for an error of {100 * feed.wanted_error:g} %, at most "
+            f"{_time(feed.longest_s)}, in {_frames(feed.exposures)}"
+        )
+    else:
+        yield f"exposure {_time(feed.exposure_s)} in {_frames(feed.exposures)}"
     yield (
-        f"signal-to-noise {known.signal_to_noise:g}{per} at {known.reference_band} = "
-        f"{known.reference_mag:g} in {_time(known.reference_s)}, airmass "
-        f"{known.reference_airmass:g}, sky share {100 * known.sky_share:g} %"
+        f"read-out {_time(feed.read_out_s)} a frame, overhead {_time(feed.overhead_s)} a visit, "
+        f"standard stars {_time(feed.standards_s)} a night"
     )
-    yield f"floor {100 * known.floor:g} %, extinction {known.extinction_mag:g} mag per airmass"
+    if isinstance(known, KnownCase):
+        per = " per angstrom" if kind == "line" else ""
+        share = "estimated" if known.sky_share is None else f"{100 * known.sky_share:g} %"
+        yield (
+            f"signal-to-noise {known.signal_to_noise:g}{per} at {known.band} = "
+            f"{known.magnitude_mag:g} in {_time(known.exposure_s)}, airmass {known.airmass:g}, "
+            f"sky share {share}"
+        )
+    elif isinstance(known, Camera):
+        yield (
+            f"camera in {known.band}: throughput {100 * known.throughput:g} %, pixel "
+            f"{known.pixel_arcsec:g} arcsec, read noise {known.read_noise_e:g} e, aperture radius "
+            f"{known.aperture_fwhm:g} seeing widths"
+        )
+    else:
+        opening = "fibre" if known.fibre else "slit"
+        yield (
+            f"spectrograph: throughput {100 * known.throughput:g} %, {known.dispersion_a:g} A a "
+            f"pixel, resolution {known.resolution_a:g} A, {opening} {known.slit_arcsec:g} arcsec"
+        )
+    most = _moon(feed.moon_illumination_max)
+    yield f"floor {100 * feed.floor:g} %, moon {most}"
+
+
+def _moon(most: float) -> str:
+    """Return a moon limit in words."""
+    return "any" if most >= 1 else f"down, or at most {100 * most:g} % illuminated"
+
+
+def _frames(count: int) -> str:
+    return "one frame" if count == 1 else f"{count} frames"
 
 
 def _rules(campaign: Campaign) -> Iterator[str]:

@@ -18,13 +18,13 @@ from planner.campaign.schema import (
     ProgrammeSection,
     SimulationSection,
     SiteSection,
-    StreamsSection,
     SuccessSection,
     TelescopeSection,
     TimeSection,
 )
 from planner.campaign.sections import Default, Section, defaults_taken
 from planner.campaign.sheet import Sheet
+from planner.campaign.stream_schema import StreamsSection
 from planner.campaign.yaml_nodes import Node, Place, node_at
 
 __all__ = ["Parts", "read_parts"]

@@ -68,7 +68,7 @@ def read_campaign(path: Path, relations: Mapping[str, Sequence[str]] | None = No
     if sheet.problems:
         raise InputError(sorted(sheet.problems, key=lambda p: (p.file != str(path), p.line or 0)))
     campaign = build(parts, choices, found_targets.targets, relations, path.stem)
-    used = {campaign.continuum.telescope, campaign.line.telescope}
+    used = {feed.telescope for s in (campaign.continuum, campaign.line) for feed in s.feeds}
     idle = [t.name for t in campaign.telescopes if t.name not in used]
     notes = [*sheet.notes, *(f"{path}: no stream uses the telescope {name}" for name in idle)]
     files = (path,) if found_targets.file is None else (path, found_targets.file)

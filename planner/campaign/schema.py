@@ -6,7 +6,7 @@ What depends on other keys (which telescope, how deep) is settled in `build`.
 
 from __future__ import annotations
 
-from typing import Annotated, Any
+from typing import Annotated, Any, Generic, TypeVar
 
 from pydantic import AfterValidator, BeforeValidator, Field
 
@@ -29,10 +29,9 @@ from planner.campaign.fields import (
 from planner.campaign.sections import Section, needed, usual
 
 __all__ = [
-    "BANDS", "LINES", "TOP_KEYS", "Candidates", "ContinuumSection", "CosmologySection",
-    "LimitsSection", "LineSection", "ProgrammeSection", "ReferenceSection", "SimulationSection",
-    "SiteSection", "StreamSection", "StreamsSection", "SuccessSection", "TelescopeSection",
-    "TimeSection",
+    "BANDS", "LINES", "TOP_KEYS", "Airmass", "Band", "Candidates", "CosmologySection",
+    "LimitsSection", "MagnitudeValue", "Pause", "ProgrammeSection", "SimulationSection",
+    "SiteSection", "SuccessSection", "TelescopeSection", "TimeSection",
 ]  # fmt: skip
 
 BANDS = ("u", "g", "r", "i", "z", "B", "V", "R")
@@ -42,16 +41,11 @@ TOP_KEYS = (
     "seasons", "time", "success", "simulation", "cosmology", "relations",
 )  # fmt: skip
 
-_EXPOSURE = "a time from 1 s to 12 h, such as 20 min"
 _PAUSE = "a time from 0 s to 12 h, such as 2 min"
-_CADENCE = "a cadence from 1 to 400 nights, such as 3 nights"
 _SEASON = "a length from 1 to 366 d, such as 120 d"
 _SHARE = "a percentage from 0 to 99, such as 20 %"
 
-Exposure = Annotated[float, quantity("s", _EXPOSURE, lambda v: 1 <= v <= 43200)]
 Pause = Annotated[float, quantity("s", _PAUSE, lambda v: 0 <= v <= 43200)]
-Cadence = Annotated[float, quantity("d", _CADENCE, lambda v: 1 <= v <= 400)]
-Cadences = Annotated[tuple[Cadence, ...], listed(_CADENCE), sorted_once]
 SeasonLength = Annotated[float, quantity("d", _SEASON, lambda v: 1 <= v <= 366)]
 Positive = Annotated[float, quantity("", "a percentage above 0, up to 100", lambda v: 0 < v <= 1)]
 Airmass = Annotated[float, number("an airmass from 1 to 10, such as 2.0", lambda v: 1 <= v <= 10)]
@@ -113,6 +107,34 @@ class WeatherSection(Section):
     ] = usual("2.5 nights")
 
 
+_DarkMag = Annotated[
+    float,
+    number("magnitudes per square arcsec from 15 to 25: 21.8", lambda v: 15 <= v <= 25, "mag"),
+]
+_ExtinctionMag = Annotated[
+    float, number("magnitudes per airmass from 0 to 3: 0.15", lambda v: 0 <= v <= 3, "mag")
+]
+Value = TypeVar("Value")
+
+
+class Bands(Section, Generic[Value]):
+    """A value for each band that is known at a site; between them it is interpolated."""
+
+    u: Value | None = None
+    g: Value | None = None
+    r: Value | None = None
+    i: Value | None = None
+    z: Value | None = None
+    B: Value | None = None
+    V: Value | None = None
+    R: Value | None = None
+
+    def pairs(self) -> tuple[tuple[str, Value], ...]:
+        """Return (band, value) of the bands that were given."""
+        given = ((band, getattr(self, band)) for band in BANDS)
+        return tuple((band, value) for band, value in given if value is not None)
+
+
 class SiteSection(Section):
     """``site``, or one of ``sites``."""
 
@@ -122,6 +144,11 @@ class SiteSection(Section):
     elevation: Elevation = usual("0 m", "sea level; it hardly matters to a plan")
     time_zone: TimeZone | None = None
     weather: WeatherSection = Field(default={}, validate_default=True)
+    seeing: Annotated[
+        float, quantity("arcsec", "a width from 0.2 to 10 arcsec", lambda v: 0.2 <= v <= 10)
+    ] = usual("1.2 arcsec")
+    dark_sky: Bands[_DarkMag] | None = None
+    extinction: Bands[_ExtinctionMag] | None = None
 
 
 class BlockedSection(Section):
@@ -154,6 +181,7 @@ class TimeSection(Section):
     hours: Annotated[float, _hours(1e5)] | None = None
     nights: Annotated[int, counted("a whole number of nights, such as 40", 1, 10000)] | None = None
     hours_per_night: Annotated[float, _hours(24)] | None = None
+    least_hours_per_night: Annotated[float, _hours(24)] | None = None
     blocked: Annotated[
         tuple[Annotated[BlockedSection, BeforeValidator(_one_night)], ...], listed(_BLOCKED)
     ] = ()
@@ -167,61 +195,13 @@ class TelescopeSection(Section):
     aperture: Annotated[
         float, quantity("m", "a diameter from 5 cm to 40 m: 1.9 m", lambda v: 0.05 <= v <= 40)
     ] = needed("the mirror's diameter, such as 1.9 m")
-    slew: Pause = usual("2 min")
+    obstruction: Annotated[
+        float, quantity("", "a percentage of the diameter, such as 30 %", lambda v: 0 <= v <= 0.8)
+    ] = usual("30 %")
+    slew: Pause = usual("1 min")
+    acquisition: Pause = usual("1 min")
+    technical_loss: Annotated[float, quantity("", _SHARE, lambda v: 0 <= v <= 0.99)] = usual("3 %")
     time: TimeSection | None = None
-
-
-class ReferenceSection(Section):
-    """``signal_to_noise`` of a stream: one known case from which all others are scaled."""
-
-    value: Annotated[
-        float, number("a signal-to-noise above 0, such as 100", lambda v: 0 < v <= 1e5)
-    ] = needed("the signal-to-noise reached, such as 100")
-    band: Band = needed(f"one of {', '.join(BANDS)}")
-    magnitude: MagnitudeValue = needed(BRIGHTNESS)
-    exposure: Exposure = needed(_EXPOSURE)
-    airmass: Airmass = usual("1.2")
-    sky_share: Annotated[float, quantity("", _SHARE, lambda v: 0 <= v <= 0.99)] = usual("20 %")
-
-
-_FLOOR = Annotated[float, quantity("", _SHARE, lambda v: 0 <= v <= 0.99)]
-
-
-class StreamSection(Section):
-    """What both streams may say."""
-
-    telescope: Name | None = None
-    cadence: Cadences | None = None
-    exposure: Exposure
-    overhead: Pause
-    signal_to_noise: ReferenceSection | None = None
-    floor: _FLOOR
-    extinction: Annotated[
-        float, number("magnitudes per airmass from 0 to 3: 0.15", lambda v: 0 <= v <= 3, "mag")
-    ] = usual("0.15")
-
-
-class ContinuumSection(StreamSection):
-    """``streams.continuum``."""
-
-    exposure: Exposure = usual("5 min")
-    overhead: Pause = usual("1 min")
-    floor: _FLOOR = usual("1.5 %")
-
-
-class LineSection(StreamSection):
-    """``streams.line``."""
-
-    exposure: Exposure = usual("20 min")
-    overhead: Pause = usual("5 min")
-    floor: _FLOOR = usual("2 %")
-
-
-class StreamsSection(Section):
-    """``streams``."""
-
-    continuum: ContinuumSection = Field(default={}, validate_default=True)
-    line: LineSection = Field(default={}, validate_default=True)
 
 
 class LimitsSection(Section):

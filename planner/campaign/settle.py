@@ -1,7 +1,7 @@
-"""What the observer left open and depends on the rest: which telescope, which candidates, how deep.
+"""What the observer left open and depends on the rest: which telescope, which candidates.
 
-Usual depths, cadences and seasons are common practice, no source. They are only starting points
-that make the smallest file work; an observer's own numbers should replace them.
+Usual cadences and seasons are common practice, no source. They are only starting points that make
+the smallest file work; an observer's own numbers should replace them.
 """
 
 from __future__ import annotations
@@ -9,10 +9,11 @@ from __future__ import annotations
 from dataclasses import dataclass, field
 
 from planner.campaign.parts import Parts
-from planner.campaign.schema import ReferenceSection, StreamSection, TelescopeSection
+from planner.campaign.schema import TelescopeSection
 from planner.campaign.sections import COMMON, Default
+from planner.campaign.stream_schema import ContinuumSection, StreamSection
 
-__all__ = ["KINDS", "Choices", "reference_for", "settle", "stream_of"]
+__all__ = ["KINDS", "Choices", "settle", "stream_of"]
 
 KINDS = ("continuum", "line")
 """The two streams."""
@@ -30,11 +31,17 @@ class Choices:
     site_of: dict[str, str] = field(default_factory=dict)
     """Telescope's name to site's name."""
     telescope_of: dict[str, TelescopeSection] = field(default_factory=dict)
-    """Stream's kind to telescope."""
+    """Key of a stream, or of one of its ``also``, to telescope."""
     cadences: dict[str, tuple[float, ...]] = field(default_factory=dict)
     season_lengths: tuple[float, ...] = ()
     seasons: tuple[int, ...] = ()
     defaults: list[Default] = field(default_factory=list)
+
+    one_site: bool = True
+
+    def key_of_site(self, name: str) -> str:
+        """Return the key under which a site stands in the file."""
+        return "site" if self.one_site else f"sites.{name}"
 
     def take(self, key: str, value: str, reason: str = COMMON) -> None:
         """Note a default."""
@@ -64,6 +71,7 @@ def settle(parts: Parts) -> Choices:
 
 def _settle_sites(parts: Parts, choices: Choices) -> None:
     sites = parts.known_sites()
+    choices.one_site = ("site",) in parts.sites
     for telescope in parts.known_telescopes():
         if telescope.site is not None:
             choices.site_of[telescope.name] = telescope.site
@@ -79,12 +87,24 @@ def _settle_telescopes(parts: Parts, choices: Choices) -> None:
     asked = {kind: section.telescope for kind in KINDS if (section := stream_of(parts, kind))}
     chosen = {kind: by_name[name] for kind, name in asked.items() if name in by_name}
     for kind, size in (("line", -1), ("continuum", 0)):
-        if asked.get(kind) is None and by_size and parts.streams:
+        if kind == "continuum" and _only_spectra(parts):
+            chosen.pop(kind, None)
+        elif asked.get(kind) is None and by_size and parts.streams:
             others = [t for t in by_size if t not in chosen.values()] or by_size
             chosen[kind] = others[size]
             reason = "the larger mirror takes the line" if len(by_size) > 1 else "the only one"
             choices.take(f"streams.{kind}.telescope", others[size].name, reason)
-    choices.telescope_of = chosen
+    choices.telescope_of = {f"streams.{kind}": telescope for kind, telescope in chosen.items()}
+    for kind in KINDS:
+        for i, other in enumerate(getattr(stream_of(parts, kind), "also", ())):
+            if other.telescope in by_name:
+                choices.telescope_of[f"streams.{kind}.also[{i + 1}]"] = by_name[other.telescope]
+
+
+def _only_spectra(parts: Parts) -> bool:
+    """Say whether the continuum is measured in the line's spectra and nowhere else."""
+    section = stream_of(parts, "continuum")
+    return isinstance(section, ContinuumSection) and section.source == "spectra"
 
 
 def _settle_candidates(parts: Parts, choices: Choices) -> None:
@@ -100,11 +120,13 @@ def _settle_candidates(parts: Parts, choices: Choices) -> None:
         seasons = tuple(n for n in _SEASONS if (n - 1) * _YEAR_D + lengths[0] <= nights) or (1,)
         choices.take("seasons", f"[{', '.join(map(str, seasons))}]")
     choices.season_lengths, choices.seasons = lengths, seasons
-    for kind in KINDS:
+    for kind in ("line", "continuum"):
         section = stream_of(parts, kind)
         if section is None:
             continue
         cadences = section.cadence
+        if kind == "continuum" and _only_spectra(parts):
+            cadences = choices.cadences["line"]
         if cadences is None:
             cadences = tuple(c for c in _CADENCES[kind] if c <= lengths[0]) or (1.0,)
             choices.take(f"streams.{kind}.cadence", _listed(cadences, "d"))
@@ -113,29 +135,3 @@ def _settle_candidates(parts: Parts, choices: Choices) -> None:
 
 def _listed(values: tuple[float, ...], unit: str) -> str:
     return f"[{', '.join(f'{v:g} {unit}' for v in values)}]"
-
-
-def reference_for(
-    kind: str, aperture_m: float, section: StreamSection, choices: Choices
-) -> ReferenceSection:
-    """Return the stream's known case; where none is given, a usual one for that aperture.
-
-    Signal-to-noise grows as the mirror's diameter while photons set it. Starting points: 100 in
-    the band at V = 16 in 5 min on 0.5 m, and 30 per angstrom at V = 16 in 20 min on 2 m (common
-    practice, no source).
-    """
-    if section.signal_to_noise is not None:
-        return section.signal_to_noise
-    known, mirror_m, exposure, per = {
-        "continuum": (100.0, 0.5, "5 min", ""),
-        "line": (30.0, 2.0, "20 min", " per angstrom"),
-    }[kind]
-    value = f"{known * aperture_m / mirror_m:.3g}"
-    choices.take(
-        f"streams.{kind}.signal_to_noise",
-        f"{value}{per} at V = 16 in {exposure}, airmass 1.2, sky share 20 %",
-        f"scaled with the aperture; {COMMON}",
-    )
-    return ReferenceSection.model_validate(
-        {"value": value, "band": "V", "magnitude": "16", "exposure": exposure}
-    )

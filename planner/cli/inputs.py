@@ -109,13 +109,14 @@ def nights(options: Namespace) -> int:
     }
     if give(options, folder, tables):
         return 0
-    climate = campaign.site_of(campaign.line).weather
+    climate = campaign.site(campaign.line.feeds[0].telescope).weather
     rows = []
     for p in prospects:
         for s in p.seasons:
-            inside = (p.line.night >= s.first) & (p.line.night <= s.last)
-            dates = campaign.first_night + p.line.night[inside]
-            hours = (p.line.window_end_mjd - p.line.window_start_mjd)[inside] * 24
+            on_offer = p.line[0]
+            inside = (on_offer.night >= s.first) & (on_offer.night <= s.last)
+            dates = campaign.first_night + on_offer.night[inside]
+            hours = (on_offer.window_end_mjd - on_offer.window_start_mjd)[inside] * 24
             first, last = (date_of_night(campaign.first_night + n) for n in (s.first, s.last))
             rows.append(
                 [

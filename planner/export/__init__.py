@@ -5,6 +5,7 @@ units and descriptions, readable by ``astropy.table.QTable.read`` and by pandas;
 also plain CSV. Times are UTC.
 """
 
+from planner.export.depth_tables import epochs_table, time_table
 from planner.export.run_record import run_json
 from planner.export.tables import (
     lags_table,
@@ -18,12 +19,14 @@ from planner.export.write import as_rows, write_csv, write_ecsv
 
 __all__ = [
     "as_rows",
+    "epochs_table",
     "lags_table",
     "recommendation_table",
     "run_json",
     "schedule_table",
     "scores_table",
     "seasons_table",
+    "time_table",
     "windows_table",
     "write_csv",
     "write_ecsv",

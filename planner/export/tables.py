@@ -6,9 +6,10 @@ from collections.abc import Sequence
 from typing import Any
 
 import numpy as np
-from astropy.table import Column, Table
+from astropy.table import Table
 
 from planner.base.timescale import utc_text
+from planner.export.columns import dates, rounded, significant, table_of
 from planner.model.campaign import Campaign
 from planner.model.plan import Recommendation, SiteSky, Visit
 from planner.model.target import Forecast
@@ -24,43 +25,20 @@ __all__ = [
     "windows_table",
 ]
 
-Spec = tuple[str, Any, str | None, str]
-"""Column name, values, unit, description."""
-
-
-def _table(columns: Sequence[Spec], **meta: Any) -> Table:
-    table = Table(meta=meta)
-    for name, values, unit, description in columns:
-        table[name] = Column(np.asarray(values), unit=unit, description=description)
-    return table
-
-
-def _rounded(values: Any, digits: int) -> Any:
-    return np.round(np.asarray(values, dtype=float), digits)
-
-
-def _dates(nights: Any) -> Any:
-    """Return the ISO dates of nights given as the MJD of their evening's date."""
-    return (np.datetime64("1858-11-17") + np.asarray(nights).astype("timedelta64[D]")).astype(str)
-
-
-def _significant(values: Any, digits: int = 3) -> Any:
-    return np.array([float(f"{v:.{digits}g}") for v in np.asarray(values, float)])
-
 
 def lags_table(forecasts: Sequence[Forecast]) -> Table:
     """Return the expected lag, variability and mass of each target's line."""
     f = forecasts
     spread = np.array([10**x.lag_scatter_dex for x in f])
     lag = np.array([x.lag_obs_d for x in f])
-    return _table(
+    return table_of(
         [
             ("target", [x.name for x in f], None, "name"),
             ("line", [x.line for x in f], None, "broad emission line"),
-            ("lag_rest", _significant([x.lag_rest_d for x in f]), "d", "median, rest frame"),
-            ("lag_obs", _significant(lag), "d", "median, observed frame"),
-            ("lag_obs_lo", _significant(lag / spread), "d", "16th percentile, observed frame"),
-            ("lag_obs_hi", _significant(lag * spread), "d", "84th percentile, observed frame"),
+            ("lag_rest", significant([x.lag_rest_d for x in f]), "d", "median, rest frame"),
+            ("lag_obs", significant(lag), "d", "median, observed frame"),
+            ("lag_obs_lo", significant(lag / spread), "d", "16th percentile, observed frame"),
+            ("lag_obs_hi", significant(lag * spread), "d", "84th percentile, observed frame"),
             ("relation", [x.relation for x in f], None, "radius-luminosity relation"),
             (
                 "outside_range",
@@ -70,7 +48,7 @@ def lags_table(forecasts: Sequence[Forecast]) -> Table:
             ),
             (
                 "log_luminosity",
-                _rounded([x.log_luminosity for x in f], 2),
+                rounded([x.log_luminosity for x in f], 2),
                 "dex(erg s-1)",
                 "log10 of lambda L_lambda of the AGN",
             ),
@@ -82,20 +60,20 @@ def lags_table(forecasts: Sequence[Forecast]) -> Table:
             ),
             (
                 "amplitude",
-                _significant([x.amplitude_mag for x in f], 2),
+                significant([x.amplitude_mag for x in f], 2),
                 "mag",
                 "median long-term rms of the AGN's light",
             ),
             (
                 "timescale_obs",
-                _significant([x.timescale_obs_d for x in f], 2),
+                significant([x.timescale_obs_d for x in f], 2),
                 "d",
                 "median damping timescale, observed frame",
             ),
-            ("log_mass", _rounded([x.log_mass for x in f], 2), "dex(solMass)", "expected mass"),
+            ("log_mass", rounded([x.log_mass for x in f], 2), "dex(solMass)", "expected mass"),
             (
                 "mass_dex",
-                _rounded([x.mass_dex for x in f], 2),
+                rounded([x.mass_dex for x in f], 2),
                 "dex",
                 "error of the mass to expect from the campaign",
             ),
@@ -111,13 +89,13 @@ def windows_table(targets: Sequence[str], skies: dict[str, SiteSky]) -> Table:
         part = {
             "target": np.asarray(targets, dtype=str)[w.target],
             "site": np.full(w.target.size, site),
-            "night": _dates(n.night[w.night]),
+            "night": dates(n.night[w.night]),
             "start_utc": utc_text(w.start_mjd),
             "end_utc": utc_text(w.end_mjd),
-            "hours": _rounded((w.end_mjd - w.start_mjd) * 24, 3),
-            "airmass_min": _rounded(w.airmass_min, 3),
-            "moon_separation": _rounded(w.moon_separation_deg, 1),
-            "moon_illumination": _rounded(w.moon_illumination, 3),
+            "hours": rounded((w.end_mjd - w.start_mjd) * 24, 3),
+            "airmass_min": rounded(w.airmass_min, 3),
+            "moon_separation": rounded(w.moon_separation_deg, 1),
+            "moon_illumination": rounded(w.moon_illumination, 3),
         }
         for name, values in part.items():
             parts.setdefault(name, []).append(values)
@@ -132,7 +110,7 @@ def windows_table(targets: Sequence[str], skies: dict[str, SiteSky]) -> Table:
         "moon_separation": ("deg", "distance of the moon at least airmass"),
         "moon_illumination": (None, "illuminated fraction of the moon at least airmass"),
     }
-    return _table(
+    return table_of(
         [(name, np.concatenate(values), *describe[name]) for name, values in parts.items()]
     )
 
@@ -141,18 +119,18 @@ def seasons_table(campaign: Campaign, prospects: Sequence[Prospect]) -> Table:
     """Return every visible season of every target, for the line stream's telescope."""
     rows = [(p.forecast.name, s) for p in prospects for s in p.seasons]
     first = campaign.first_night
-    return _table(
+    return table_of(
         [
             ("target", np.array([name for name, _ in rows], dtype=str), None, "name"),
             (
                 "first_night",
-                _dates(np.array([first + s.first for _, s in rows], dtype=int)),
+                dates(np.array([first + s.first for _, s in rows], dtype=int)),
                 None,
                 "local date of the first evening",
             ),
             (
                 "last_night",
-                _dates(np.array([first + s.last for _, s in rows], dtype=int)),
+                dates(np.array([first + s.last for _, s in rows], dtype=int)),
                 None,
                 "local date of the last evening",
             ),
@@ -171,7 +149,7 @@ def scores_table(scores: Sequence[Score]) -> Table:
     """Return what the trials say of every layout of every target."""
     s = scores
     layout = [x.layout for x in s]
-    return _table(
+    return table_of(
         [
             ("target", np.array([x.target for x in s], dtype=str), None, "name"),
             ("cadence_line", [x.cadence_line_nights for x in layout], "d", "between spectra"),
@@ -183,45 +161,45 @@ def scores_table(scores: Sequence[Score]) -> Table:
             ),
             ("season_length", [x.season_length_d for x in layout], "d", "of each season"),
             ("seasons", [x.seasons for x in layout], None, "number of seasons"),
-            ("epochs_line", _rounded([x.epochs_line for x in s], 1), None, "mean over weather"),
+            ("epochs_line", rounded([x.epochs_line for x in s], 1), None, "mean over weather"),
             (
                 "epochs_continuum",
-                _rounded([x.epochs_continuum for x in s], 1),
+                rounded([x.epochs_continuum for x in s], 1),
                 None,
                 "mean over weather",
             ),
             (
                 "success",
-                _rounded([x.success for x in s], 4),
+                rounded([x.success for x in s], 4),
                 None,
                 "share of trials with a right claim",
             ),
             (
                 "success_lo",
-                _rounded([x.success_lo for x in s], 4),
+                rounded([x.success_lo for x in s], 4),
                 None,
                 "lower end, 90 % confidence (Wilson)",
             ),
             (
                 "success_hi",
-                _rounded([x.success_hi for x in s], 4),
+                rounded([x.success_hi for x in s], 4),
                 None,
                 "upper end, 90 % confidence (Wilson)",
             ),
             (
                 "false_claims",
-                _rounded([x.false_claims for x in s], 4),
+                rounded([x.false_claims for x in s], 4),
                 None,
                 "share of trials with a wrong claim",
             ),
             (
                 "false_claims_hi",
-                _rounded([x.false_claims_hi for x in s], 4),
+                rounded([x.false_claims_hi for x in s], 4),
                 None,
                 "upper end, 90 % confidence (Wilson)",
             ),
-            ("hours", _rounded([x.hours for x in s], 2), "h", "clock hours, both streams"),
-            ("hours_line", _rounded([x.hours_line for x in s], 2), "h", "clock hours, line stream"),
+            ("hours", rounded([x.hours for x in s], 2), "h", "clock hours, both streams"),
+            ("hours_line", rounded([x.hours_line for x in s], 2), "h", "clock hours, line stream"),
             ("trials", [x.trials for x in s], None, "0: the layout cannot be scheduled"),
             ("note", np.array([x.note for x in s], dtype=str), None, "what stands in the way"),
         ]
@@ -235,7 +213,7 @@ def recommendation_table(
     nan = float("nan")
 
     def of(name: str, digits: int) -> Any:
-        return _rounded(
+        return rounded(
             [nan if r.score is None else float(getattr(r.score, name)) for r in recommendations],
             digits,
         )
@@ -249,7 +227,7 @@ def recommendation_table(
         )
 
     run = [executed.get(r.target) for r in recommendations]
-    return _table(
+    return table_of(
         [
             ("target", [r.target for r in recommendations], None, "name"),
             (
@@ -274,19 +252,19 @@ def recommendation_table(
             ("hours", of("hours", 2), "h", "clock hours to expect, both streams"),
             (
                 "success_scheduled",
-                _rounded([nan if s is None else s.success for s in run], 4),
+                rounded([nan if s is None else s.success for s in run], 4),
                 None,
                 "success on the nights that the schedule of all targets leaves under weather",
             ),
             (
                 "success_scheduled_lo",
-                _rounded([nan if s is None else s.success_lo for s in run], 4),
+                rounded([nan if s is None else s.success_lo for s in run], 4),
                 None,
                 "lower end, 90 % confidence (Wilson)",
             ),
             (
                 "epochs_line_scheduled",
-                _rounded([nan if s is None else s.epochs_line for s in run], 1),
+                rounded([nan if s is None else s.epochs_line for s in run], 1),
                 None,
                 "line epochs that the schedule leaves, mean over weather",
             ),
@@ -334,16 +312,16 @@ def schedule_table(campaign: Campaign, visits: Sequence[Visit]) -> Table:
         )
     ]
     nights = np.array([campaign.first_night + v.night for v in visits], dtype=int)
-    return _table(
+    return table_of(
         [
-            ("night", _dates(nights), None, "local date of the evening"),
+            ("night", dates(nights), None, "local date of the evening"),
             *text,
             ("start_utc", utc_text(start), None, "start of slew, UTC"),
             ("end_utc", utc_text(end), None, "end of read-out, UTC"),
             ("exposure", [v.exposure_s for v in visits], "s", "shutter time"),
-            ("airmass", _rounded(sky["airmass"], 3), None, "at mid-visit"),
-            ("moon_separation", _rounded(sky["moon"], 1), "deg", "at mid-visit"),
-            ("parallactic_angle", _rounded(sky["angle"], 1), "deg", "at mid-visit"),
+            ("airmass", rounded(sky["airmass"], 3), None, "at mid-visit"),
+            ("moon_separation", rounded(sky["moon"], 1), "deg", "at mid-visit"),
+            ("parallactic_angle", rounded(sky["angle"], 1), "deg", "at mid-visit"),
         ],
         note="Planned for clear skies: a visit lost to weather is taken on the next clear night. "
         "A plan is no permission: the observatory's own limits, sun avoidance, safety rules and "

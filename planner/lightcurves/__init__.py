@@ -6,6 +6,6 @@ Nothing here knows how epochs come about or how lags are recovered.
 """
 
 from planner.lightcurves.driver import draw_pair
-from planner.lightcurves.observed import observed_continuum, observed_line
+from planner.lightcurves.fluxes import continuum_flux, line_flux
 
-__all__ = ["draw_pair", "observed_continuum", "observed_line"]
+__all__ = ["continuum_flux", "draw_pair", "line_flux"]

@@ -85,21 +85,22 @@ class Campaign:
         """Return the telescope called `name`."""
         return next(t for t in self.telescopes if t.name == name)
 
-    def site_of(self, stream: Stream) -> Site:
-        """Return the site of the telescope that takes `stream`."""
-        place = self.telescope(stream.telescope).site
+    def site(self, telescope: str) -> Site:
+        """Return the site of the telescope called `telescope`."""
+        place = self.telescope(telescope).site
         return next(s for s in self.sites if s.name == place)
 
     def layouts(self) -> tuple[Layout, ...]:
         """Return every candidate layout: cadences x season lengths x numbers of seasons.
 
         A continuum sampled more sparsely than the line is left out wherever a denser one is on
-        offer: the driver must be known between the line's epochs.
+        offer: the driver must be known between the line's epochs. A continuum that is measured in
+        spectra alone has the line's cadence.
         """
         pairs = [
             (line, cont)
             for line in self.line.cadence_nights
-            for cont in self.continuum.cadence_nights
+            for cont in (self.continuum.cadence_nights if self.continuum.feeds else (line,))
             if cont <= line or cont == self.continuum.cadence_nights[0]
         ]
         return tuple(

@@ -10,7 +10,7 @@ from planner.model.sky import Nights, Windows
 from planner.model.target import Forecast
 from planner.model.trial import Prospect, Score, TrialTable
 
-__all__ = ["Help", "Plan", "Recommendation", "SiteSky", "Unplaced", "Visit"]
+__all__ = ["Help", "Plan", "Recommendation", "SiteSky", "TimeSpent", "Unplaced", "Visit"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -19,6 +19,9 @@ class SiteSky:
 
     nights: Nights
     windows: Windows
+    """Within the campaign's limits."""
+    moonless: Windows
+    """The same with the moon below the horizon; without rows where no stream has a moon limit."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -67,6 +70,27 @@ class Visit:
 
 
 @dataclass(frozen=True, slots=True)
+class TimeSpent:
+    """Clock time of a schedule on one telescope in one stream; all in hours."""
+
+    telescope: str
+    stream: str
+    visits: int
+    nights: int
+    """Nights on which the telescope works for this stream."""
+    shutter_hours: float
+    visit_hours: float
+    """Slews, acquisition, exposures, read-out and overhead."""
+    standards_hours: float
+    minimum_hours: float
+    """Charged for nights shorter than the least, shared out by the time spent."""
+    clock_hours: float
+    """All of it."""
+    whole_nights: float
+    """Clock hours over the mean dark hours of the campaign's nights."""
+
+
+@dataclass(frozen=True, slots=True)
 class Unplaced:
     """Visits of one target and stream that the schedule found no room for."""
 
@@ -93,6 +117,7 @@ class Plan:
     recommendations: tuple[Recommendation, ...]
     visits: tuple[Visit, ...]
     unplaced: tuple[Unplaced, ...]
+    time_spent: tuple[TimeSpent, ...]
     executed: dict[str, Score]
     """By target: the schedule as the weather would let it happen."""
     run: dict[str, Any]

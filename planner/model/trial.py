@@ -11,30 +11,44 @@ from planner.model.campaign import Layout
 from planner.model.sky import Season
 from planner.model.target import Forecast
 
-__all__ = ["Outcome", "Prospect", "Score", "StreamNights", "TrialTable"]
+__all__ = ["FeedNights", "Prospect", "Score", "TrialTable"]
 
 
 @dataclass(frozen=True, slots=True)
-class StreamNights:
-    """The nights on which one target can be visited in one stream; arrays of shape (nights,).
+class FeedNights:
+    """The nights on which one telescope can visit one target in one stream; arrays (nights,).
 
     Only nights with a window that holds a whole visit are listed, in time order.
     """
 
+    telescope: str
     site: str
+    in_spectra_of: int | None
+    """Continuum: number of the line's telescope in whose spectra it is measured; None: visits of
+    its own."""
     night: NDArray[np.int64]
     """Nights since the campaign's first."""
     window_start_mjd: NDArray[np.float64]
     window_end_mjd: NDArray[np.float64]
     best_mjd: NDArray[np.float64]
-    """Middle of a visit as near to the least airmass as the window allows."""
+    """Middle of a visit at the time of the window that gives the smallest error."""
     airmass: NDArray[np.float64]
-    """At `best_mjd`."""
-    moon_separation_deg: NDArray[np.float64]
+    """At `best_mjd`, as what follows."""
+    sky_ab_mag: NDArray[np.float64]
+    """Sky brightness per square arcsec, AB, at the stream's wavelength."""
     flux_error: NDArray[np.float64]
-    """Fractional error of the flux of one visit."""
+    """Fractional error of the flux of one visit, the calibration's included."""
+    scale_error: float
+    """Part of `flux_error` that all that is measured in one spectrum has in common; 0 in images."""
+    signal_to_noise: NDArray[np.float64]
+    """Of the band's flux, or of the spectrum's continuum per pixel or angstrom."""
+    exposure_s: float
     visit_s: float
-    """Exposure, read-out and slew."""
+    """Slew, acquisition, exposure, read-out and overhead."""
+    standards_s: float
+    """Spent once a night."""
+    reached: bool
+    """False: even the longest exposure does not give the wanted error."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -42,26 +56,12 @@ class Prospect:
     """One target as its trials see it."""
 
     forecast: Forecast
-    line: StreamNights
-    continuum: StreamNights
+    line: tuple[FeedNights, ...]
+    """By telescope, the main one first."""
+    continuum: tuple[FeedNights, ...]
     seasons: tuple[Season, ...]
-
-
-@dataclass(frozen=True, slots=True)
-class Outcome:
-    """What one trial of one layout came to. Lags in the observed frame; NaN: no lag."""
-
-    lag_true_d: float
-    lag_d: float
-    lag_lo_d: float
-    lag_hi_d: float
-    r_max: float
-    epochs_line: int
-    epochs_continuum: int
-    claim: bool
-    success: bool
-    reason: str
-    """Why there is no claim, or why a claim is wrong; empty for a success."""
+    note: str
+    """Why there is no season; else empty."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -77,6 +77,10 @@ class TrialTable:
     r_max: NDArray[np.float64]
     epochs_line: NDArray[np.int64]
     epochs_continuum: NDArray[np.int64]
+    hours: NDArray[np.float64]
+    """Clock hours of both streams."""
+    hours_line: NDArray[np.float64]
+    hours_shutter: NDArray[np.float64]
     claim: NDArray[np.bool_]
     success: NDArray[np.bool_]
     reason: NDArray[np.int8]
@@ -99,7 +103,10 @@ class Score:
     false_claims_lo: float
     false_claims_hi: float
     hours: float
+    """Clock hours of both streams."""
     hours_line: float
+    hours_shutter: float
+    """Exposures alone, both streams."""
     trials: int
     note: str
     """Why the layout could not be tried as it stands, or in what it was cut short; else empty."""

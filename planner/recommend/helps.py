@@ -6,6 +6,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass, replace
 
 from planner.model.campaign import Campaign, Layout
+from planner.model.observatory import Stream
 from planner.model.plan import Help
 from planner.model.trial import Score
 
@@ -32,7 +33,6 @@ def changes_for(campaign: Campaign, best: Score) -> tuple[Change, ...]:
     extended by a year where needed.
     """
     layout = best.layout
-    line, continuum = campaign.line, campaign.continuum
     changes = []
     denser = max(1.0, layout.cadence_line_nights / 2)
     if denser < layout.cadence_line_nights:
@@ -48,7 +48,7 @@ def changes_for(campaign: Campaign, best: Score) -> tuple[Change, ...]:
             )
         )
     denser = max(1.0, layout.cadence_continuum_nights / 2)
-    if denser < layout.cadence_continuum_nights:
+    if campaign.continuum.feeds and denser < layout.cadence_continuum_nights:
         changes.append(
             Change(
                 f"imaging every {_nights(denser)}",
@@ -56,22 +56,11 @@ def changes_for(campaign: Campaign, best: Score) -> tuple[Change, ...]:
                 replace(layout, cadence_continuum_nights=denser),
             )
         )
-    changes.append(
-        Change(
-            f"spectra of {line.exposure_s * DEEPER / 60:.3g} min",
-            replace(campaign, line=replace(line, exposure_s=line.exposure_s * DEEPER)),
-            layout,
-        )
-    )
-    changes.append(
-        Change(
-            f"images of {continuum.exposure_s * DEEPER / 60:.3g} min",
-            replace(
-                campaign, continuum=replace(continuum, exposure_s=continuum.exposure_s * DEEPER)
-            ),
-            layout,
-        )
-    )
+    words, deeper = _deeper(campaign.line)
+    changes.append(Change(f"spectra {words}", replace(campaign, line=deeper), layout))
+    if campaign.continuum.feeds:
+        words, deeper = _deeper(campaign.continuum)
+        changes.append(Change(f"images {words}", replace(campaign, continuum=deeper), layout))
     longer = 1.5 * layout.season_length_d
     changes.append(
         Change(f"seasons of {longer:.0f} d", campaign, replace(layout, season_length_d=longer))
@@ -85,6 +74,22 @@ def changes_for(campaign: Campaign, best: Score) -> tuple[Change, ...]:
         )
     )
     return tuple(changes)
+
+
+def _deeper(stream: Stream) -> tuple[str, Stream]:
+    """Return a stream with exposures four times as long, and that in words."""
+    feeds = tuple(
+        replace(
+            feed,
+            exposure_s=None if feed.exposure_s is None else feed.exposure_s * DEEPER,
+            wanted_error=feed.wanted_error / DEEPER**0.5,
+            longest_s=feed.longest_s * DEEPER,
+        )
+        for feed in stream.feeds
+    )
+    exposure = feeds[0].exposure_s
+    words = "four times as long" if exposure is None else f"of {exposure / 60:.3g} min"
+    return words, replace(stream, feeds=feeds)
 
 
 def _nights(cadence: float) -> str:

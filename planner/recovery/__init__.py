@@ -7,6 +7,7 @@ reason why there is none, claim or not, likelihood. The true lag enters only in 
 
 from planner.recovery.correlation import centroid, correlation
 from planner.recovery.cuts import is_claim, is_right, passes_cuts
+from planner.recovery.join import joined
 from planner.recovery.lag import LagResult, recover_lag
 from planner.recovery.likelihood import drw_log_likelihood
 from planner.recovery.search import lag_grid, minimum_overlap, search_range
@@ -18,6 +19,7 @@ __all__ = [
     "drw_log_likelihood",
     "is_claim",
     "is_right",
+    "joined",
     "lag_grid",
     "minimum_overlap",
     "passes_cuts",

@@ -57,6 +57,7 @@ def recover_lag(
     resamples: int,
     rng: np.random.Generator,
     min_points: int | None = None,
+    r_max_above: float = 0.0,
 ) -> LagResult:
     """Recover a lag by interpolated cross-correlation, its error by resampling.
 
@@ -81,6 +82,8 @@ def recover_lag(
     min_points : int or None
         Fewest overlapping epochs in each direction; None: `minimum_overlap` of the curve with
         fewer epochs.
+    r_max_above : float
+        A peak that is not higher gives no lag, and no resampling is done: it would not be claimed.
 
     Returns
     -------
@@ -98,7 +101,7 @@ def recover_lag(
     lags = even_lags(lags_d)
     r = correlate(one.t_d, one.flux, two.t_d, two.flux, lags, min_points)
     own = centroid(lags, r)
-    reason = _no_centroid(own)
+    reason = _no_centroid(own, r_max_above)
     if reason:
         return _result(own, lags, r, np.empty(0), 0.0, reason)
     drawn = _resampled(one, two, lags, resamples, rng, min_points)
@@ -109,8 +112,8 @@ def recover_lag(
     return _result(own, lags, r, centroids, share, reason)
 
 
-def _no_centroid(own: tuple[float, float, float, bool]) -> str:
-    """Return why a correlation function has no centroid, or nothing."""
+def _no_centroid(own: tuple[float, float, float, bool], r_max_above: float) -> str:
+    """Return why a correlation function has no centroid worth having, or nothing."""
     _, r_max, _, at_edge = own
     if np.isnan(r_max):
         return "the light curves overlap in too few points, or do not vary, at every lag searched"
@@ -118,6 +121,8 @@ def _no_centroid(own: tuple[float, float, float, bool]) -> str:
         return "the light curves are nowhere positively correlated"
     if at_edge:
         return "the correlation peaks at the edge of the lags that can be searched"
+    if r_max <= r_max_above:
+        return f"the correlation peaks at {r_max:.2f}, not above {r_max_above:g}"
     return ""
 
 

@@ -6,6 +6,7 @@ The same rule run under simulated weather says which visits the campaign would r
 """
 
 from planner.schedule.assign import assign, planned, used_nights
+from planner.schedule.ledger import time_spent
 from planner.schedule.requests import Request, requests_of
 
-__all__ = ["Request", "assign", "planned", "requests_of", "used_nights"]
+__all__ = ["Request", "assign", "planned", "requests_of", "time_spent", "used_nights"]

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass, field, replace
+from dataclasses import replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -11,49 +11,19 @@ from numpy.typing import NDArray
 from planner.model.campaign import Campaign
 from planner.model.observatory import TimeAllotment
 from planner.model.plan import Unplaced, Visit
+from planner.schedule.ledger import Ledgers
 from planner.schedule.requests import Request
 
 __all__ = ["assign", "planned", "used_nights"]
 
-Clear = Mapping[str, NDArray[np.bool_]]
-"""By site: whether each night, counted from the campaign's first, is usable."""
+Usable = Mapping[str, NDArray[np.bool_]]
+"""By telescope: whether each night, counted from the campaign's first, is usable."""
 
 SECONDS_PER_DAY = 86400.0
 
 
-@dataclass
-class _Ledger:
-    """Time already given on one telescope."""
-
-    allotment: TimeAllotment
-    hours: float = 0.0
-    nights: int = 0
-    tonight: list[tuple[float, float]] = field(default_factory=list)
-    hours_tonight: float = 0.0
-
-    def new_night(self) -> None:
-        self.tonight, self.hours_tonight = [], 0.0
-
-    def allows(self, visit_h: float) -> bool:
-        a, slack = self.allotment, 1e-9
-        return (
-            (a.hours is None or self.hours + visit_h <= a.hours + slack)
-            and (
-                a.hours_per_night is None
-                or self.hours_tonight + visit_h <= a.hours_per_night + slack
-            )
-            and (a.nights is None or bool(self.tonight) or self.nights < a.nights)
-        )
-
-    def book(self, start: float, end: float) -> None:
-        self.nights += not self.tonight
-        self.tonight = sorted([*self.tonight, (start, end)])
-        self.hours += (end - start) * 24
-        self.hours_tonight += (end - start) * 24
-
-
 def assign(
-    campaign: Campaign, requests: Sequence[Request], clear: Clear | None = None
+    campaign: Campaign, requests: Sequence[Request], usable: Usable | None = None
 ) -> list[Visit]:
     """Assign visits to nights and times.
 
@@ -65,36 +35,35 @@ def assign(
     ----------
     campaign : Campaign
     requests : sequence of Request
-    clear : mapping of str to (nights,) bool arrays, optional
-        Usable nights of each site: a simulated sky gives what the campaign would really get. None:
-        the plan for clear skies.
+    usable : mapping of str to (nights,) bool arrays, optional
+        Usable nights of each telescope: a simulated sky gives what the campaign would really get.
+        None: the plan for clear skies.
 
     Returns
     -------
     list of Visit
         In order of night, then start.
     """
-    ledgers = {t.name: _Ledger(t.time) for t in campaign.telescopes}
+    ledgers = Ledgers(campaign)
     due = [float(r.first[0]) for r in requests]
     season = [0] * len(requests)
     by_night = _index_by_night(requests)
     visits: list[Visit] = []
     for night in sorted(by_night):
-        for ledger in ledgers.values():
-            ledger.new_night()
+        ledgers.new_night()
         ranked = []
         for r, row in by_night[night]:
             request = requests[r]
             while night > request.last[season[r]]:
                 season[r] += 1
                 due[r] = float(request.first[season[r]])
-            if night >= due[r] and (clear is None or clear[request.nights.site][night]):
+            if night >= due[r] and (usable is None or usable[request.telescope][night]):
                 overdue = (night - due[r]) / request.cadence_nights + 1
                 ranked.append((-overdue * request.priority, r, row))
         tonight = []
         for _, r, row in sorted(ranked):
             request = requests[r]
-            visit = _fit(request, row, night, ledgers[request.telescope])
+            visit = _fit(request, row, night, ledgers)
             if visit is not None:
                 tonight.append(visit)
                 late = night - due[r]
@@ -116,32 +85,31 @@ def _index_by_night(requests: Sequence[Request]) -> dict[int, list[tuple[int, in
     return by_night
 
 
-def _fit(request: Request, row: int, night: int, ledger: _Ledger) -> Visit | None:
+def _fit(request: Request, row: int, night: int, ledgers: Ledgers) -> Visit | None:
     """Book the free time nearest to the wanted one, or return None."""
     nights = request.nights
     length = nights.visit_s / SECONDS_PER_DAY
-    if not ledger.allows(length * 24):
+    standards_h = nights.standards_s / 3600
+    if not ledgers.allows(request.telescope, request.stream, length * 24, standards_h):
         return None
+    booked = ledgers.booked[request.telescope]
     earliest = float(nights.window_start_mjd[row])
     latest = float(nights.window_end_mjd[row]) - length
     wanted = float(nights.best_mjd[row]) - length / 2
     wanted = min(max(wanted, earliest), latest)
     starts = [wanted]
-    for booked_start, booked_end in ledger.tonight:
+    for booked_start, booked_end in booked:
         starts += [booked_start - length, booked_end]
     free = [
         s
         for s in starts
         if earliest <= s <= latest
-        and all(
-            s + length <= b_start + _TOUCH or s >= b_end - _TOUCH
-            for b_start, b_end in ledger.tonight
-        )
+        and all(s + length <= b_start + _TOUCH or s >= b_end - _TOUCH for b_start, b_end in booked)
     ]
     if not free:
         return None
     start = min(free, key=lambda s: (abs(s - wanted), s))
-    ledger.book(start, start + length)
+    ledgers.book(request.telescope, request.stream, start, start + length, standards_h)
     return Visit(
         night=night,
         target=request.target,
@@ -149,7 +117,7 @@ def _fit(request: Request, row: int, night: int, ledger: _Ledger) -> Visit | Non
         telescope=request.telescope,
         start_mjd=start,
         end_mjd=start + length,
-        exposure_s=request.exposure_s,
+        exposure_s=nights.exposure_s,
     )
 
 
@@ -163,7 +131,8 @@ def planned(campaign: Campaign, requests: Sequence[Request]) -> tuple[list[Visit
     unplaced = []
     for request in requests:
         alone = assign(_unlimited(campaign), [request])
-        placed = sum(v.target == request.target and v.stream == request.stream for v in visits)
+        mine = (request.target, request.stream, request.telescope)
+        placed = sum((v.target, v.stream, v.telescope) == mine for v in visits)
         if placed < len(alone):
             unplaced.append(
                 Unplaced(
@@ -180,21 +149,25 @@ def planned(campaign: Campaign, requests: Sequence[Request]) -> tuple[list[Visit
 
 def _unlimited(campaign: Campaign) -> Campaign:
     """Return the campaign with nothing but windows limiting its telescopes."""
+    free = TimeAllotment()
     return replace(
-        campaign, telescopes=tuple(replace(t, time=TimeAllotment()) for t in campaign.telescopes)
+        campaign,
+        telescopes=tuple(replace(t, time=free) for t in campaign.telescopes),
+        line=replace(campaign.line, time=free),
+        continuum=replace(campaign.continuum, time=free),
     )
 
 
 def used_nights(requests: Sequence[Request], visits: Sequence[Visit]) -> list[NDArray[np.bool_]]:
     """Return, for each request, which of its nights on offer the visits used."""
     rows = {
-        (r.target, r.stream): dict(
+        (r.target, r.stream, r.telescope): dict(
             zip(r.nights.night.tolist(), range(r.nights.night.size), strict=True)
         )
         for r in requests
     }
-    used = {(r.target, r.stream): np.zeros(r.nights.night.size, dtype=bool) for r in requests}
+    used = {key: np.zeros(len(of_night), dtype=bool) for key, of_night in rows.items()}
     for visit in visits:
-        key = (visit.target, visit.stream)
+        key = (visit.target, visit.stream, visit.telescope)
         used[key][rows[key][visit.night]] = True
-    return [used[(r.target, r.stream)] for r in requests]
+    return [used[r.target, r.stream, r.telescope] for r in requests]

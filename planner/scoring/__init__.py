@@ -5,17 +5,20 @@ A trial draws lag, variability, response width, weather and noise; the same draw
 layout of a target. Finished work is kept in a store, so that an interrupted run goes on.
 """
 
+from planner.scoring.depth import Depth, depth_of
+from planner.scoring.draws import Setting, setting_of, sky_of_trial
 from planner.scoring.example import Example, example_of
 from planner.scoring.intervals import wilson
-from planner.scoring.placing import Placing, place
+from planner.scoring.placing import Placing, place, place_in
 from planner.scoring.prospects import prospect_of
-from planner.scoring.run import Job, Progress, Used, score_targets
+from planner.scoring.run import Job, Progress, score_targets
 from planner.scoring.scores import scores_of
 from planner.scoring.store import Store, key_of
-from planner.scoring.trials import REASONS, Setting, setting_of, sky_of_trial
+from planner.scoring.trials import REASONS, Used, with_spectra
 
 __all__ = [
     "REASONS",
+    "Depth",
     "Example",
     "Job",
     "Placing",
@@ -23,13 +26,16 @@ __all__ = [
     "Setting",
     "Store",
     "Used",
+    "depth_of",
     "example_of",
     "key_of",
     "place",
+    "place_in",
     "prospect_of",
     "score_targets",
     "scores_of",
     "setting_of",
     "sky_of_trial",
     "wilson",
+    "with_spectra",
 ]

@@ -9,12 +9,11 @@ import numpy as np
 from planner.model.campaign import Layout
 from planner.model.trial import Prospect, TrialTable
 from planner.recovery import LagResult
-from planner.scoring.placing import place
+from planner.scoring.draws import Setting, draw_trial
+from planner.scoring.placing import place_in
 from planner.scoring.trials import (
     REASONS,
     Curves,
-    Setting,
-    draw_trial,
     nights_used,
     observe,
     recover,
@@ -41,10 +40,9 @@ def example_of(setting: Setting, prospect: Prospect, layout: Layout, table: Tria
     outcomes = table.reason[at]
     commonest = np.bincount(outcomes).argmax()
     trial = int(np.flatnonzero(outcomes == commonest)[0])
-    placing = place(layout, prospect.seasons, prospect.line)
+    placing = place_in(prospect, layout)
     draw = draw_trial(setting, prospect, trial)
-    taken = nights_used(prospect, layout, placing, draw.clear)
-    curves = observe(prospect, draw, *taken)
+    curves = observe(prospect, draw, nights_used(prospect, layout, placing, draw.usable))
     span = float(placing.last[-1] - placing.first[0])
     result = recover(setting, prospect, curves, span, str(layout), trial)
     return Example(trial, draw.lag_obs_d, curves, result, REASONS[commonest] or "success")

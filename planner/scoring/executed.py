@@ -2,22 +2,22 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+
 import numpy as np
 from numpy.typing import NDArray
 
 from planner.model.campaign import Layout
 from planner.model.trial import Prospect
-from planner.scoring.placing import place
-from planner.scoring.trials import Setting, draw_trial, empty_table, fill
+from planner.scoring.draws import Setting, draw_trial
+from planner.scoring.placing import place_in
+from planner.scoring.trials import Used, empty_table, fill
 
-__all__ = ["Used", "run_executed"]
-
-Used = tuple[tuple[NDArray[np.bool_], NDArray[np.bool_]], ...]
-"""By trial: the nights used by the continuum and by the line, over the nights on offer."""
+__all__ = ["run_executed"]
 
 
 def run_executed(
-    setting: Setting, prospect: Prospect, layout: Layout, used: Used, first: int
+    setting: Setting, prospect: Prospect, layout: Layout, used: Sequence[Used], first: int
 ) -> dict[str, NDArray[np.float64]]:
     """Run one trial per element of `used`, from trial number `first` on.
 
@@ -30,7 +30,7 @@ def run_executed(
         The columns of `TrialTable`.
     """
     table = empty_table(1, len(used))
-    placing = place(layout, prospect.seasons, prospect.line)
+    placing = place_in(prospect, layout)
     span = float(placing.last[-1] - placing.first[0])
     for i, taken in enumerate(used):
         draw = draw_trial(setting, prospect, first + i)

@@ -11,9 +11,9 @@ from numpy.typing import NDArray
 
 from planner.model.campaign import Layout
 from planner.model.sky import Season
-from planner.model.trial import StreamNights
+from planner.model.trial import FeedNights, Prospect
 
-__all__ = ["Placing", "place"]
+__all__ = ["Placing", "place", "place_in"]
 
 SHORT = 0.9
 """A season that holds less than this share of the wanted length is noted as cut short."""
@@ -30,7 +30,15 @@ class Placing:
     note: str
 
 
-def place(layout: Layout, seasons: Sequence[Season], line: StreamNights) -> Placing:
+def place_in(prospect: Prospect, layout: Layout) -> Placing:
+    """Put a layout's observing seasons into those of a prospect; see `place`."""
+    if not prospect.seasons:
+        none = np.empty(0, dtype=np.int64)
+        return Placing(none, none, prospect.note)
+    return place(layout, prospect.seasons, prospect.line[0])
+
+
+def place(layout: Layout, seasons: Sequence[Season], line: FeedNights) -> Placing:
     """Put a layout's observing seasons into a target's visible ones.
 
     Of all runs of consecutive visible seasons, the run that holds the most of the wanted length is
@@ -43,13 +51,11 @@ def place(layout: Layout, seasons: Sequence[Season], line: StreamNights) -> Plac
     layout : Layout
     seasons : sequence of Season
         The target's visible seasons, in time order.
-    line : StreamNights
-        Nights on offer for the line stream.
+    line : FeedNights
+        Nights on offer on the line's main telescope.
     """
     none = np.empty(0, dtype=np.int64)
     seasons = _by_year(seasons)
-    if not seasons:
-        return Placing(none, none, "never observable within the limits")
     if layout.seasons > len(seasons):
         return Placing(none, none, f"the campaign holds {_count(len(seasons))} of this target")
     wanted = round(layout.season_length_d)
@@ -80,7 +86,7 @@ def _count(seasons: int) -> str:
     return "one season" if seasons == 1 else f"{seasons} seasons"
 
 
-def _best_stretch(season: Season, wanted: int, line: StreamNights) -> tuple[int, int]:
+def _best_stretch(season: Season, wanted: int, line: FeedNights) -> tuple[int, int]:
     """Return first and last night of the best stretch of at most `wanted` nights."""
     nights = season.last - season.first + 1
     if nights <= wanted:

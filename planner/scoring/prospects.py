@@ -7,19 +7,26 @@ from collections.abc import Mapping
 import numpy as np
 from numpy.typing import NDArray
 
-from planner.agn import LINES, magnitude_in
 from planner.model.campaign import Campaign
-from planner.model.observatory import Stream, TimeAllotment
+from planner.model.observatory import Feed, TimeAllotment
 from planner.model.plan import SiteSky
 from planner.model.sky import Windows
 from planner.model.target import Forecast, Target
-from planner.model.trial import Prospect, StreamNights
+from planner.model.trial import FeedNights, Prospect
+from planner.scoring.depth import Depth, depth_of
 from planner.sky import seasons_of
-from planner.telescope import flux_error, line_flux_error, visit_s
+from planner.telescope import Conditions, exposure_for, visit_s
 
 __all__ = ["prospect_of"]
 
+Floats = NDArray[np.float64]
+
 SECONDS_PER_DAY = 86400.0
+TIMES = 7
+"""Times of a window that are tried for the smallest error."""
+BETTER = 0.995
+"""The time of least airmass is kept unless another has an error smaller by half a per cent."""
+SHORTEST_EXPOSURE_S = 10.0
 
 
 def prospect_of(
@@ -27,96 +34,201 @@ def prospect_of(
 ) -> Prospect:
     """Return what the campaign offers its target number `index`.
 
-    Seasons are those of the line stream's telescope: nights on which a whole visit fits into a
+    Seasons are those of the line's main telescope: nights on which a whole visit fits into a
     window and the telescope is ours.
     """
     target = campaign.targets[index]
-    line, kept = _stream_nights(campaign, campaign.line, target, index, forecast, skies)
-    continuum, _ = _stream_nights(campaign, campaign.continuum, target, index, forecast, skies)
-    nights = skies[campaign.site_of(campaign.line).name].nights
-    return Prospect(forecast, line, continuum, tuple(seasons_of(kept, nights)))
+    line = tuple(
+        _feed_nights(campaign, "line", feed, target, index, forecast, skies)
+        for feed in campaign.line.feeds
+    )
+    continuum = [
+        _feed_nights(campaign, "continuum", feed, target, index, forecast, skies)
+        for feed in campaign.continuum.feeds
+    ]
+    if campaign.continuum.in_spectra:
+        continuum += [
+            _in_spectra(campaign, number, nights, target, forecast)
+            for number, nights in enumerate(line)
+        ]
+    sky = skies[line[0].site]
+    seasons = tuple(seasons_of(_windows_of(line[0], index), sky.nights))
+    note = "" if seasons else _why_none(sky, index, line[0])
+    return Prospect(forecast, line, tuple(continuum), seasons, note)
 
 
-def _stream_nights(
+def _why_none(sky: SiteSky, index: int, line: FeedNights) -> str:
+    w = sky.windows
+    hours = (w.end_mjd - w.start_mjd)[w.target == index] * 24
+    if not hours.size:
+        return "never observable within the limits"
+    visit = line.visit_s / 3600
+    if hours.max() < visit:
+        return f"no window holds a visit of {visit:.2g} h; the longest has {hours.max():.2g} h"
+    return "no night of the telescope's time falls on a window"
+
+
+def _feed_nights(
     campaign: Campaign,
-    stream: Stream,
+    kind: str,
+    feed: Feed,
     target: Target,
     index: int,
     forecast: Forecast,
     skies: Mapping[str, SiteSky],
-) -> tuple[StreamNights, Windows]:
-    """Return the nights on offer in one stream, and the windows they stand for."""
-    telescope = campaign.telescope(stream.telescope)
-    site = campaign.site_of(stream).name
-    sky = skies[site]
-    length_s = visit_s(stream, telescope)
-    rows = _usable(sky, index, length_s / SECONDS_PER_DAY, telescope.time)
-    w = sky.windows
-    half = 0.5 * length_s / SECONDS_PER_DAY
-    best = np.clip(w.best_mjd[rows], w.start_mjd[rows] + half, w.end_mjd[rows] - half)
-    nights = StreamNights(
-        site=site,
+) -> FeedNights:
+    """Return the nights on offer on one telescope."""
+    telescope, site = campaign.telescope(feed.telescope), campaign.site(feed.telescope)
+    sky = skies[site.name]
+    depth = depth_of(campaign, kind, feed, target, forecast)
+    rows_of = _Rows(sky, index, feed, telescope.time)
+    exposure, reached = _exposure(feed, depth, rows_of)
+    length_s = visit_s(feed, telescope, exposure)
+    w, rows = rows_of.that_hold(length_s / SECONDS_PER_DAY)
+    best, conditions = _best_times(depth, exposure, w, rows, 0.5 * length_s / SECONDS_PER_DAY)
+    return FeedNights(
+        telescope=feed.telescope,
+        site=site.name,
+        in_spectra_of=None,
         night=w.night[rows].astype(np.int64),
         window_start_mjd=w.start_mjd[rows],
         window_end_mjd=w.end_mjd[rows],
         best_mjd=best,
-        airmass=w.airmass_min[rows],
-        moon_separation_deg=w.moon_separation_deg[rows],
-        flux_error=_errors(campaign, stream, target, forecast, w.airmass_min[rows]),
+        airmass=np.asarray(conditions.airmass),
+        sky_ab_mag=np.asarray(conditions.sky_ab_mag),
+        flux_error=depth.error(exposure, conditions),
+        scale_error=feed.floor if kind == "line" else 0.0,
+        signal_to_noise=depth.signal_to_noise(exposure, conditions),
+        exposure_s=exposure,
         visit_s=length_s,
+        standards_s=feed.standards_s,
+        reached=reached,
     )
-    return nights, _only(w, rows)
 
 
-def _usable(sky: SiteSky, index: int, visit_d: float, time: TimeAllotment) -> NDArray[np.int64]:
-    """Return the row of the longest window of each night that holds a visit and is ours."""
-    w, dates = sky.windows, sky.nights.night
-    if time.hours_per_night is not None and visit_d * 24 > time.hours_per_night + 1e-9:
-        return np.empty(0, dtype=np.int64)
-    ours = (w.target == index) & (w.end_mjd - w.start_mjd >= visit_d)
-    for first, last in time.blocked:
-        ours &= (dates[w.night] < first) | (dates[w.night] > last)
-    rows = np.flatnonzero(ours)
-    longest_first = rows[np.lexsort((w.start_mjd[rows] - w.end_mjd[rows], w.night[rows]))]
-    _, at = np.unique(w.night[longest_first], return_index=True)
-    return longest_first[at]
-
-
-def _errors(
-    campaign: Campaign,
-    stream: Stream,
-    target: Target,
-    forecast: Forecast,
-    airmass: NDArray[np.float64],
-) -> NDArray[np.float64]:
-    """Return the fractional flux error of one visit on each night."""
-    instrument = stream.instrument
-    magnitude = magnitude_in(target, instrument.reference_band, campaign.cosmology)
-    if stream.kind == "continuum":
-        return flux_error(instrument, magnitude, stream.exposure_s, airmass)
-    stretch = 1 + target.redshift
-    return line_flux_error(
-        instrument,
-        magnitude,
-        stream.exposure_s,
-        airmass,
-        equivalent_width_obs_a=forecast.line_equivalent_width_a * stretch,
-        line_width_km_s=forecast.line_width_km_s,
-        wavelength_obs_a=LINES[forecast.line].wavelength_rest_a * stretch,
+def _in_spectra(
+    campaign: Campaign, number: int, line: FeedNights, target: Target, forecast: Forecast
+) -> FeedNights:
+    """Return the continuum epochs that come with the line's spectra of one telescope."""
+    feed = campaign.line.feeds[number]
+    depth = depth_of(campaign, "spectra", feed, target, forecast)
+    photon = depth.error(line.exposure_s, depth.conditions_at(line.best_mjd))
+    return FeedNights(
+        telescope=line.telescope,
+        site=line.site,
+        in_spectra_of=number,
+        night=line.night,
+        window_start_mjd=line.window_start_mjd,
+        window_end_mjd=line.window_end_mjd,
+        best_mjd=line.best_mjd,
+        airmass=line.airmass,
+        sky_ab_mag=line.sky_ab_mag,
+        flux_error=np.hypot(photon, feed.floor),
+        scale_error=feed.floor,
+        signal_to_noise=line.signal_to_noise,
+        exposure_s=0.0,
+        visit_s=0.0,
+        standards_s=0.0,
+        reached=True,
     )
+
+
+class _Rows:
+    """The windows of one target that one telescope may use."""
+
+    def __init__(self, sky: SiteSky, index: int, feed: Feed, time: TimeAllotment) -> None:
+        """Leave out blocked nights, and moonlight where the stream's moon limit forbids it."""
+        self.time = time
+        dates, lit = sky.nights.night, sky.nights.moon_illumination
+        parts = []
+        bright = lit > feed.moon_illumination_max
+        for w, mine in ((sky.windows, ~bright), (sky.moonless, bright)):
+            ours = (w.target == index) & mine[w.night]
+            for first, last in time.blocked:
+                ours &= (dates[w.night] < first) | (dates[w.night] > last)
+            parts.append(_only(w, np.flatnonzero(ours)))
+        self.windows = _in_time_order(_joined(*parts))
+
+    def that_hold(self, visit_d: float) -> tuple[Windows, NDArray[np.int64]]:
+        """Return the windows, and of each night the row of the longest that holds a visit."""
+        w = self.windows
+        limit = self.time.hours_per_night
+        if limit is not None and visit_d * 24 > limit + 1e-9:
+            return w, np.empty(0, dtype=np.int64)
+        rows = np.flatnonzero(w.end_mjd - w.start_mjd >= visit_d)
+        longest_first = rows[np.lexsort((w.start_mjd[rows] - w.end_mjd[rows], w.night[rows]))]
+        _, at = np.unique(w.night[longest_first], return_index=True)
+        return w, longest_first[at]
+
+
+def _exposure(feed: Feed, depth: Depth, rows: _Rows) -> tuple[float, bool]:
+    """Return the exposure, found for the median conditions of the windows where that is asked."""
+    if feed.exposure_s is not None:
+        return feed.exposure_s, True
+    w, used = rows.that_hold(0.0)
+    if not used.size:
+        return feed.longest_s, True
+    conditions = depth.conditions_at(w.best_mjd[used])
+    median = conditions._replace(
+        airmass=np.median(conditions.airmass),
+        sky_ab_mag=np.median(conditions.sky_ab_mag),
+        parallactic_deg=np.median(conditions.parallactic_deg),
+    )
+    return exposure_for(
+        lambda seconds: float(depth.error(seconds, median)),
+        feed.wanted_error,
+        SHORTEST_EXPOSURE_S,
+        feed.longest_s,
+    )
+
+
+def _best_times(
+    depth: Depth, exposure_s: float, w: Windows, rows: NDArray[np.int64], half_d: float
+) -> tuple[Floats, Conditions]:
+    """Return the middle of each night's best visit, and the conditions then."""
+    earliest, latest = w.start_mjd[rows] + half_d, w.end_mjd[rows] - half_d
+    highest = np.clip(w.best_mjd[rows], earliest, latest)
+    spread = earliest[:, None] + (latest - earliest)[:, None] * np.linspace(0, 1, TIMES)
+    tried = np.concatenate([highest[:, None], spread], axis=1)
+    error = depth.error(exposure_s, depth.conditions_at(tried))
+    error[:, 0] *= BETTER
+    best = np.take_along_axis(tried, np.argmin(error, axis=1)[:, None], axis=1)[:, 0]
+    return best, depth.conditions_at(best)
+
+
+_COLUMNS = (
+    "target", "night", "start_mjd", "end_mjd", "best_mjd", "airmass_min", "moon_separation_deg",
+    "moon_altitude_deg", "moon_illumination",
+)  # fmt: skip
 
 
 def _only(w: Windows, rows: NDArray[np.int64]) -> Windows:
     """Return the windows of some rows."""
+    return Windows(w.site, *(getattr(w, name)[rows] for name in _COLUMNS))
+
+
+def _joined(a: Windows, b: Windows) -> Windows:
+    columns = (np.concatenate([getattr(a, n), getattr(b, n)]) for n in _COLUMNS)
+    return Windows(a.site, *columns)
+
+
+def _in_time_order(w: Windows) -> Windows:
+    return _only(w, np.argsort(w.start_mjd, kind="stable"))
+
+
+def _windows_of(nights: FeedNights, index: int) -> Windows:
+    """Return the nights on offer as windows, for the search of seasons."""
+    count = nights.night.size
+    nothing = np.zeros(count)
     return Windows(
-        site=w.site,
-        target=w.target[rows],
-        night=w.night[rows],
-        start_mjd=w.start_mjd[rows],
-        end_mjd=w.end_mjd[rows],
-        best_mjd=w.best_mjd[rows],
-        airmass_min=w.airmass_min[rows],
-        moon_separation_deg=w.moon_separation_deg[rows],
-        moon_altitude_deg=w.moon_altitude_deg[rows],
-        moon_illumination=w.moon_illumination[rows],
+        site=nights.site,
+        target=np.full(count, index, dtype=np.int32),
+        night=nights.night.astype(np.int32),
+        start_mjd=nights.window_start_mjd,
+        end_mjd=nights.window_end_mjd,
+        best_mjd=nights.best_mjd,
+        airmass_min=nights.airmass,
+        moon_separation_deg=nothing,
+        moon_altitude_deg=nothing,
+        moon_illumination=nothing,
     )

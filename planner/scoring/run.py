@@ -12,13 +12,14 @@ from numpy.typing import NDArray
 from planner.base.workers import each
 from planner.model.campaign import Layout
 from planner.model.trial import Prospect, TrialTable
-from planner.scoring.executed import Used, run_executed
+from planner.scoring.draws import Setting
+from planner.scoring.executed import run_executed
 from planner.scoring.store import Store, key_of
-from planner.scoring.trials import Setting, run_trials
+from planner.scoring.trials import Used, run_trials
 
 __all__ = ["MODEL_VERSION", "Job", "Progress", "Used", "score_targets"]
 
-MODEL_VERSION = 1
+MODEL_VERSION = 2
 """Raised whenever the same inputs would give other outcomes; older kept results are then stale."""
 
 CHUNK = 10
@@ -37,7 +38,7 @@ class Job:
     setting: Setting
     prospect: Prospect
     layouts: tuple[Layout, ...]
-    used: Used | None = None
+    used: tuple[Used, ...] | None = None
     """None: the target has the telescopes to itself. Else the nights that a schedule gave it; then
     there is one layout."""
 
@@ -47,7 +48,7 @@ class _Task:
     setting: Setting
     prospect: Prospect
     layouts: tuple[Layout, ...]
-    used: Used | None
+    used: tuple[Used, ...] | None
     first: int
     last: int
 
@@ -127,6 +128,9 @@ def _table(job: Job, parts: list[Arrays]) -> TrialTable:
         r_max=joined["r_max"],
         epochs_line=joined["epochs_line"].astype(np.int64),
         epochs_continuum=joined["epochs_continuum"].astype(np.int64),
+        hours=joined["hours"],
+        hours_line=joined["hours_line"],
+        hours_shutter=joined["hours_shutter"],
         claim=joined["claim"].astype(bool),
         success=joined["success"].astype(bool),
         reason=joined["reason"].astype(np.int8),

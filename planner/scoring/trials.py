@@ -9,27 +9,24 @@ from numpy.typing import NDArray
 
 from planner.base.seeds import stream
 from planner.kernels.epochs import nights_taken
-from planner.lightcurves import draw_pair, observed_continuum, observed_line
-from planner.model.campaign import Campaign, Layout, Simulation, SuccessRule
-from planner.model.observatory import WeatherClimate
-from planner.model.trial import Prospect
+from planner.model.campaign import Layout, SuccessRule
+from planner.model.trial import FeedNights, Prospect
 from planner.recovery import (
     LagResult,
     is_claim,
     is_right,
+    joined,
     lag_grid,
     recover_lag,
     search_range,
 )
-from planner.scoring.placing import Placing, place
-from planner.weather import clear_nights
+from planner.scoring.draws import Draw, Setting, draw_trial
+from planner.scoring.placing import Placing, place_in
 
 __all__ = [
     "REASONS",
     "Curves",
-    "Draw",
-    "Setting",
-    "draw_trial",
+    "Used",
     "empty_table",
     "fill",
     "judge",
@@ -37,8 +34,7 @@ __all__ = [
     "observe",
     "recover",
     "run_trials",
-    "setting_of",
-    "sky_of_trial",
+    "with_spectra",
 ]
 
 REASONS = (
@@ -56,147 +52,77 @@ REASONS = (
 FEWEST_EPOCHS = 5
 """Below this many epochs in a stream no lag is looked for (common practice, no source)."""
 
+Floats = NDArray[np.float64]
+Used = tuple[tuple[NDArray[np.bool_], ...], tuple[NDArray[np.bool_], ...]]
+"""For continuum and line, by telescope: which of the nights on offer are used."""
+
 SEARCH_SIGMAS = 2.5
 """Lags up to so many standard deviations of the prior above its median are looked for."""
-
-
-@dataclass(frozen=True, slots=True)
-class Setting:
-    """What all targets of a campaign share; sent to the workers with every task."""
-
-    seed: int
-    first_night: int
-    nights: int
-    climates: tuple[tuple[str, WeatherClimate], ...]
-    simulation: Simulation
-    success: SuccessRule
-
-
-def setting_of(campaign: Campaign) -> Setting:
-    """Return what all trials of a campaign share."""
-    return Setting(
-        seed=campaign.seed,
-        first_night=campaign.first_night,
-        nights=campaign.last_night - campaign.first_night + 1,
-        climates=tuple((s.name, s.weather) for s in campaign.sites),
-        simulation=campaign.simulation,
-        success=campaign.success,
-    )
-
-
-@dataclass(frozen=True, slots=True)
-class Draw:
-    """One trial's truth, and its fluxes on every night on offer, whatever the layout."""
-
-    lag_obs_d: float
-    clear: dict[str, NDArray[np.bool_]]
-    """By site: usable nights, counted from the campaign's first."""
-    flux_continuum: NDArray[np.float64]
-    flux_line: NDArray[np.float64]
 
 
 @dataclass(frozen=True, slots=True)
 class Curves:
     """Both light curves of one trial of one layout; times in days of UTC MJD."""
 
-    t_continuum: NDArray[np.float64]
-    f_continuum: NDArray[np.float64]
-    e_continuum: NDArray[np.float64]
-    t_line: NDArray[np.float64]
-    f_line: NDArray[np.float64]
-    e_line: NDArray[np.float64]
-
-
-def draw_trial(setting: Setting, prospect: Prospect, trial: int) -> Draw:
-    """Draw everything random of one trial of one target, except the resampling of its errors.
-
-    Lag, amplitude and timescale are log-normal about the forecast; the top-hat response's width
-    is a uniform share of the lag. Each night on offer has its own flux and noise, whatever layout
-    uses it.
-    """
-    forecast, simulation = prospect.forecast, setting.simulation
-    name = forecast.name
-    lag_z, amplitude_z, timescale_z = stream(setting.seed, "truth", name, trial).standard_normal(3)
-    lag = forecast.lag_obs_d * 10 ** (forecast.lag_scatter_dex * lag_z)
-    amplitude = forecast.amplitude_mag * 10 ** (forecast.amplitude_scatter_dex * amplitude_z)
-    timescale = forecast.timescale_obs_d * 10 ** (forecast.timescale_scatter_dex * timescale_z)
-    width = lag * stream(setting.seed, "response", name, trial).uniform(*simulation.response_width)
-    continuum, line = prospect.continuum, prospect.line
-    x, y = draw_pair(
-        stream(setting.seed, "driver", name, trial),
-        continuum.best_mjd - setting.first_night,
-        line.best_mjd - setting.first_night,
-        timescale,
-        lag,
-        width,
-    )
-    noise_c = stream(setting.seed, "noise continuum", name, trial).standard_normal(x.size)
-    noise_l = stream(setting.seed, "noise line", name, trial).standard_normal(y.size)
-    return Draw(
-        lag_obs_d=lag,
-        clear=sky_of_trial(setting, trial),
-        flux_continuum=observed_continuum(
-            x, amplitude, forecast.agn_fraction, continuum.flux_error, noise_c
-        ),
-        flux_line=observed_line(y, amplitude, simulation.responsivity, line.flux_error, noise_l),
-    )
-
-
-def sky_of_trial(setting: Setting, trial: int) -> dict[str, NDArray[np.bool_]]:
-    """Return each site's usable nights in one trial: the same sky for every target."""
-    nights = np.arange(setting.first_night, setting.first_night + setting.nights)
-    return {
-        site: clear_nights(
-            climate,
-            nights,
-            stream(setting.seed, "weather", site, trial).uniform(size=(1, nights.size)),
-        )[0]
-        for site, climate in setting.climates
-    }
+    t_continuum: Floats
+    f_continuum: Floats
+    e_continuum: Floats
+    t_line: Floats
+    f_line: Floats
+    e_line: Floats
 
 
 def nights_used(
-    prospect: Prospect, layout: Layout, placing: Placing, clear: dict[str, NDArray[np.bool_]]
-) -> tuple[NDArray[np.bool_], NDArray[np.bool_]]:
-    """Return which nights on offer a target that has the telescopes to itself would use.
+    prospect: Prospect, layout: Layout, placing: Placing, usable: dict[str, NDArray[np.bool_]]
+) -> Used:
+    """Return which nights on offer a target that has the telescopes to itself would use."""
 
-    Returns
-    -------
-    two bool arrays
-        Over the nights on offer of the continuum and of the line.
-    """
-    continuum, line = (
-        nights_taken(
+    def taken(nights: FeedNights, cadence: float) -> NDArray[np.bool_]:
+        mine: NDArray[np.bool_] = nights_taken(
             nights.night,
-            clear[nights.site][nights.night],
+            usable[nights.telescope][nights.night],
             placing.first,
             placing.last,
             float(cadence),
         )
-        for nights, cadence in (
-            (prospect.continuum, layout.cadence_continuum_nights),
-            (prospect.line, layout.cadence_line_nights),
+        return mine
+
+    line = tuple(taken(n, layout.cadence_line_nights) for n in prospect.line)
+    return with_spectra(
+        prospect,
+        tuple(
+            taken(n, layout.cadence_continuum_nights)
+            for n in prospect.continuum
+            if n.in_spectra_of is None
+        ),
+        line,
+    )
+
+
+def with_spectra(
+    prospect: Prospect, imaging: tuple[NDArray[np.bool_], ...], line: tuple[NDArray[np.bool_], ...]
+) -> Used:
+    """Add the continuum that comes with the line's spectra to the nights of images and spectra."""
+    ridden = tuple(line[n.in_spectra_of] for n in prospect.continuum if n.in_spectra_of is not None)
+    return (*imaging, *ridden), line
+
+
+def observe(prospect: Prospect, draw: Draw, used: Used) -> Curves:
+    """Return the light curves of the nights that were used, telescopes joined."""
+    streams = []
+    for feeds, measured, taken in (
+        (prospect.continuum, draw.continuum, used[0]),
+        (prospect.line, draw.line, used[1]),
+    ):
+        streams.append(
+            joined(
+                [
+                    (feed.best_mjd[mine], flux[mine], error[mine])
+                    for feed, (flux, error), mine in zip(feeds, measured, taken, strict=True)
+                ]
+            )
         )
-    )
-    return continuum, line
-
-
-def observe(
-    prospect: Prospect,
-    draw: Draw,
-    taken_continuum: NDArray[np.bool_],
-    taken_line: NDArray[np.bool_],
-) -> Curves:
-    """Return the light curves of the nights that were used."""
-    c, l = taken_continuum, taken_line
-    return Curves(
-        prospect.continuum.best_mjd[c],
-        draw.flux_continuum[c],
-        prospect.continuum.flux_error[c],
-        prospect.line.best_mjd[l],
-        draw.flux_line[l],
-        prospect.line.flux_error[l],
-    )
+    return Curves(*streams[0], *streams[1])
 
 
 def recover(
@@ -227,6 +153,7 @@ def recover(
         lags,
         setting.simulation.resamples,
         stream(setting.seed, "resampling", forecast.name, label, trial),
+        r_max_above=setting.success.r_max_above,
     )
 
 
@@ -234,13 +161,13 @@ def judge(result: LagResult | None, lag_true_d: float, rule: SuccessRule) -> tup
     """Return whether a result is a claim, whether it is a success, and the reason's index."""
     if result is None:
         return False, False, 2
+    if result.r_max <= rule.r_max_above:
+        return False, False, 4
     if not np.isfinite(result.lag_d):
         return False, False, 3
     if is_claim(result, rule):
         right = bool(is_right(result.lag_d, lag_true_d, rule.within))
         return True, right, 0 if right else 7
-    if not result.r_max > rule.r_max_above:
-        return False, False, 4
     half_width = 0.5 * (result.lag_hi_d - result.lag_lo_d)
     if result.lag_d <= rule.sigma_above * (result.lag_d - result.lag_lo_d):
         return False, False, 6
@@ -258,7 +185,7 @@ def run_trials(
         The columns of `TrialTable`.
     """
     table = empty_table(len(layouts), last - first)
-    placings = [place(layout, prospect.seasons, prospect.line) for layout in layouts]
+    placings = [place_in(prospect, layout) for layout in layouts]
     for trial in range(first, last):
         draw = draw_trial(setting, prospect, trial)
         for i, (layout, placing) in enumerate(zip(layouts, placings, strict=True)):
@@ -267,14 +194,17 @@ def run_trials(
             if placing.first.size == 0:
                 table["reason"][at] = 1
                 continue
-            taken = nights_used(prospect, layout, placing, draw.clear)
+            used = nights_used(prospect, layout, placing, draw.usable)
             span = float(placing.last[-1] - placing.first[0])
-            fill(table, at, setting, prospect, draw, taken, span, str(layout), trial)
+            fill(table, at, setting, prospect, draw, used, span, str(layout), trial)
     return table
 
 
 _LAGS = ("lag_true_d", "lag_d", "lag_lo_d", "lag_hi_d", "r_max")
-_COUNTS = ("epochs_line", "epochs_continuum", "claim", "success", "reason")
+_COUNTS = (
+    "epochs_line", "epochs_continuum", "hours", "hours_line", "hours_shutter", "claim", "success",
+    "reason",
+)  # fmt: skip
 
 
 def empty_table(layouts: int, trials: int) -> dict[str, NDArray[np.float64]]:
@@ -289,17 +219,24 @@ def fill(
     setting: Setting,
     prospect: Prospect,
     draw: Draw,
-    taken: tuple[NDArray[np.bool_], NDArray[np.bool_]],
+    used: Used,
     span_d: float,
     label: str,
     trial: int,
 ) -> None:
     """Observe, recover and judge one trial, and write it into the table."""
-    curves = observe(prospect, draw, *taken)
+    curves = observe(prospect, draw, used)
     result = recover(setting, prospect, curves, span_d, label, trial)
     claim, success, reason = judge(result, draw.lag_obs_d, setting.success)
     table["epochs_continuum"][at] = curves.t_continuum.size
     table["epochs_line"][at] = curves.t_line.size
+    for kind, feeds, taken in (("", prospect.continuum, used[0]), ("line", prospect.line, used[1])):
+        for feed, mine in zip(feeds, taken, strict=True):
+            visits = np.count_nonzero(mine)
+            hours = visits * (feed.visit_s + feed.standards_s) / 3600
+            table["hours"][at] += hours
+            table["hours_line"][at] += hours if kind == "line" else 0.0
+            table["hours_shutter"][at] += visits * feed.exposure_s / 3600
     table["claim"][at], table["success"][at], table["reason"][at] = claim, success, reason
     if result is not None:
         table["lag_d"][at] = result.lag_d

@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
+from functools import lru_cache
 
 import erfa
 import numpy as np
@@ -15,6 +17,8 @@ __all__ = ["Ephemeris"]
 
 _MJD0 = 2400000.5
 _MOON_STEPS_PER_DAY = 4
+_BLOCK_D = 64
+"""Spans are widened to whole blocks, so that requests for nearby dates share one table."""
 _AU_PER_DAY_IN_C = erfa.DAU / erfa.DAYSEC / erfa.CMPS
 
 
@@ -33,13 +37,10 @@ class Ephemeris:
 
     @classmethod
     def over(cls, first_mjd: float, last_mjd: float) -> Ephemeris:
-        """Make the table for the UTC dates from `first_mjd` to `last_mjd`."""
-        first, last = np.floor(first_mjd) - 2, np.ceil(last_mjd) + 2
-        day = np.arange(first, last + 1)
-        quarter = np.linspace(first, last, _MOON_STEPS_PER_DAY * (day.size - 1) + 1)
-        return cls(
-            CubicSpline(day, _daily_values(tt_of_utc(day))),
-            CubicSpline(quarter, erfa.moon98(_MJD0, tt_of_utc(quarter))["p"]),
+        """Return the table for the UTC dates from `first_mjd` to `last_mjd`, or longer."""
+        return _table(
+            math.floor(first_mjd / _BLOCK_D) * _BLOCK_D - 2,
+            math.ceil(last_mjd / _BLOCK_D) * _BLOCK_D + 2,
         )
 
     def sun(self, mjd: NDArray[np.float64]) -> NDArray[np.float64]:
@@ -74,6 +75,16 @@ class Ephemeris:
             np.linalg.norm(to_sun, axis=-1) * np.linalg.norm(moon, axis=-1)
         )
         return np.asarray((1.0 + cosine) / 2.0)
+
+
+@lru_cache(maxsize=8)
+def _table(first: int, last: int) -> Ephemeris:
+    day = np.arange(float(first), last + 1.0)
+    quarter = np.linspace(first, last, _MOON_STEPS_PER_DAY * (day.size - 1) + 1)
+    return Ephemeris(
+        CubicSpline(day, _daily_values(tt_of_utc(day))),
+        CubicSpline(quarter, erfa.moon98(_MJD0, tt_of_utc(quarter))["p"]),
+    )
 
 
 def _daily_values(tt_mjd: NDArray[np.float64]) -> NDArray[np.float64]:

@@ -2,16 +2,21 @@
 
 from __future__ import annotations
 
-from planner.model.observatory import Stream, Telescope
+from planner.model.observatory import Feed, Telescope
 
-__all__ = ["cost_h", "visit_s"]
-
-
-def visit_s(stream: Stream, telescope: Telescope) -> float:
-    """Return the clock time of one visit in seconds: slew, exposure and the stream's overhead."""
-    return telescope.slew_s + stream.exposure_s + stream.overhead_s
+__all__ = ["visit_s"]
 
 
-def cost_h(visits: float, stream: Stream, telescope: Telescope) -> float:
-    """Return the clock hours of a number of visits."""
-    return visits * visit_s(stream, telescope) / 3600
+def visit_s(feed: Feed, telescope: Telescope, exposure_s: float) -> float:
+    """Return the clock time of one visit in seconds.
+
+    Slew, acquisition, the feed's overhead, shutter time and the read-out of every frame. Standard
+    stars are a matter of the night, not of the visit.
+    """
+    return (
+        telescope.slew_s
+        + telescope.acquisition_s
+        + feed.overhead_s
+        + exposure_s
+        + feed.exposures * feed.read_out_s
+    )

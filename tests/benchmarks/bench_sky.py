@@ -15,10 +15,12 @@ from astropy.coordinates import SkyCoord
 from astropy.time import Time
 
 from planner.base.timescale import offline
-from planner.model.observatory import Limits, Site, WeatherClimate
+from planner.model.observatory import Limits, Site, SkyQuality, WeatherClimate
 from planner.sky import constraints, nights_at, observer, seasons_of, windows_of
 
-SITE = Site("here", -30.4, -70.9, 2300.0, None, WeatherClimate((1.0,) * 12, 2.0))
+AIR = (WeatherClimate((1.0,) * 12, 2.0), SkyQuality(1.2, (), ()))
+
+SITE = Site("here", -30.4, -70.9, 2300.0, None, *AIR)
 LIMITS = Limits(2.0, -18.0, 30.0)
 FIRST = 61465
 ASTROPLAN_NIGHTS = 4

@@ -4,7 +4,7 @@ import numpy as np
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from planner.model.observatory import Limits, Site, WeatherClimate
+from planner.model.observatory import Limits, Site, SkyQuality, WeatherClimate
 from planner.sky import moon_separation, nights_at, positions_at, sun_moon_at, windows_of
 
 MARGIN_DEG = 0.05
@@ -12,7 +12,13 @@ MARGIN_DEG = 0.05
 
 sites = st.builds(
     lambda latitude, longitude: Site(
-        "here", latitude, longitude, 1000.0, None, WeatherClimate((1.0,) * 12, 2.0)
+        "here",
+        latitude,
+        longitude,
+        1000.0,
+        None,
+        WeatherClimate((1.0,) * 12, 2.0),
+        SkyQuality(1.2, (), ()),
     ),
     st.floats(-90, 90),
     st.floats(-180, 180),

@@ -8,9 +8,11 @@ from astropy.coordinates import SkyCoord
 from astropy.time import Time
 
 from planner.base.timescale import offline
-from planner.model.observatory import Limits, Site, WeatherClimate
+from planner.model.observatory import Limits, Site, SkyQuality, WeatherClimate
 from planner.model.sky import NightState
 from planner.sky import constraints, nights_at, observer, windows_of
+
+AIR = (WeatherClimate((1.0,) * 12, 2.0), SkyQuality(1.2, (), ()))
 
 LATITUDES = (-80.0, -62.0, -45.2, -30.4, -12.1, 0.5, 19.8, 37.0, 51.5, 69.6, 78.2)
 TARGETS_PER_SITE = 22
@@ -18,7 +20,7 @@ EDGE_D = 60.0 / 86400.0
 
 
 def _site(latitude, longitude):
-    return Site("here", latitude, longitude, 1500.0, None, WeatherClimate((1.0,) * 12, 2.0))
+    return Site("here", latitude, longitude, 1500.0, None, *AIR)
 
 
 def _allows(site, limits, coordinates, mjd):

@@ -13,9 +13,11 @@ from astropy.coordinates import AltAz, EarthLocation, SkyCoord, get_body
 from astropy.time import Time
 
 from planner.base.timescale import offline
-from planner.model.observatory import Limits, Site, WeatherClimate
+from planner.model.observatory import Limits, Site, SkyQuality, WeatherClimate
 from planner.model.sky import NightState
 from planner.sky import moon_separation, nights_at, positions_at, sun_moon_at, windows_of
+
+AIR = (WeatherClimate((1.0,) * 12, 2.0), SkyQuality(1.2, (), ()))
 
 CASES = 240
 EDGE_S = 5.0
@@ -23,7 +25,7 @@ DAY_S = 86400.0
 
 
 def _site(latitude, longitude, elevation=2000.0):
-    return Site("here", latitude, longitude, elevation, None, WeatherClimate((1.0,) * 12, 2.0))
+    return Site("here", latitude, longitude, elevation, None, *AIR)
 
 
 class Oracle:

@@ -4,15 +4,17 @@ import ephem
 import numpy as np
 import pytest
 
-from planner.model.observatory import Limits, Site, WeatherClimate
+from planner.model.observatory import Limits, Site, SkyQuality, WeatherClimate
 from planner.model.sky import NightState
 from planner.sky import nights_at, sun_moon_at
+
+AIR = (WeatherClimate((1.0,) * 12, 2.0), SkyQuality(1.2, (), ()))
 
 MJD_OF_EPHEM = 15019.5  # ephem counts days from 1899-12-31 noon
 
 
 def _site(latitude, longitude):
-    return Site("here", latitude, longitude, 0.0, None, WeatherClimate((1.0,) * 12, 2.0))
+    return Site("here", latitude, longitude, 0.0, None, *AIR)
 
 
 def _observer(site):

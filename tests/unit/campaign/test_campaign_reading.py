@@ -6,6 +6,13 @@ from dataclasses import FrozenInstanceError
 import pytest
 
 from planner.campaign import Default, as_dict, describe, read_campaign
+from planner.model.observatory import (
+    Camera,
+    KnownCase,
+    LineMeasurement,
+    SkyQuality,
+    Spectrograph,
+)
 
 SMALLEST = """\
 campaign: {first_night: 2027-03-01, last_night: 2028-10-31}
@@ -46,18 +53,31 @@ sites:
       clear: {jan: 82 %, feb: 80 %, mar: 75 %, apr: 70 %, may: 60 %, jun: 55 %,
               jul: 55 %, aug: 60 %, sep: 65 %, oct: 70 %, nov: 75 %, dec: 80 %}
       bad_spell: 60 h
+    seeing: 0.9 arcsec
+    dark_sky: {V: 21.7, r: 21}
+    extinction: {V: 0.2 mag}
   - {name: Low Fell, latitude: 54.5 deg, longitude: -3.1 deg}
 telescopes:
-  - {name: C19, site: Corran Ridge, aperture: 190 cm, slew: 90 s,
-     time: {hours: 300 h, blocked: [2027-05-01, {from: 2027-06-01, to: 2027-06-09}]}}
+  - {name: C19, site: Corran Ridge, aperture: 190 cm, slew: 90 s, acquisition: 2 min,
+     obstruction: 25 %, technical_loss: 5 %,
+     time: {hours: 300 h, least_hours_per_night: 1,
+            blocked: [2027-05-01, {from: 2027-06-01, to: 2027-06-09}]}}
   - {name: F04, site: Low Fell, aperture: 0.4 m}
   - {name: F05, site: Low Fell, aperture: 0.5 m}
 streams:
   continuum: {telescope: F05, cadence: [4 d, 2 d], exposure: 3 min, overhead: 30 s, floor: 1 %,
-              extinction: 0.2 mag,
+              source: both, exposures: 3, read_out: 20 s, standards: 5 min, moon: grey,
               signal_to_noise: {value: 90, band: r, magnitude: 15.5, exposure: 3 min,
-                                airmass: 1, sky_share: 30 %}}
-  line: {telescope: C19, cadence: 3 nights, exposure: 0.5 h, overhead: 6 min}
+                                airmass: 1, sky_share: 30 %, read_share: 4 %},
+              also: [{telescope: F04, exposure: auto, wanted_error: 3 %, moon: 40 %, floor: 2 %,
+                      camera: {band: V, throughput: 30 %, pixel: 0.7 arcsec, read_noise: 8,
+                               dark: 0.1, aperture: 1.5, comparison: 13.5,
+                               comparison_stars: 4}}]}
+  line: {telescope: C19, cadence: 3 nights, exposure: 0.5 h, overhead: 6 min, time: {hours: 90},
+         calibration: narrow lines, narrow_width: 15 Angstrom, continuum_window: 10 nm,
+         spectrograph: {throughput: 18 %, dispersion: 1.2 Angstrom, resolution: 0.5 nm,
+                        slit: 2 arcsec, angle: 45 deg, guide: 6000 Angstrom, pixel: 0.3 arcsec,
+                        read_noise: 4, dark: 0.003}}
 limits: {airmass: 1.8, twilight: Nautical, moon_separation: 45 deg}
 season_lengths: [180 d, 90 d]
 seasons: 3
@@ -105,11 +125,24 @@ def test_everything_given_arrives_in_the_record(tmp_path):
     assert (f04.time.hours, f04.time.nights, f04.time.hours_per_night) == (None, 200, 6.5)
     assert campaign.continuum.cadence_nights == (2.0, 4.0)
     assert campaign.line.cadence_nights == (3.0,)
-    assert (campaign.line.exposure_s, campaign.line.overhead_s) == (1800.0, 360.0)
-    known = campaign.continuum.instrument
-    assert (known.signal_to_noise, known.reference_band, known.reference_mag) == (90.0, "r", 15.5)
-    assert (known.reference_s, known.reference_airmass, known.sky_share) == (180.0, 1.0, 0.3)
-    assert (known.floor, known.extinction_mag) == (0.01, 0.2)
+    assert ridge.sky == SkyQuality(0.9, (("r", 21.0), ("V", 21.7)), (("V", 0.2),))
+    assert (c19.obstruction, c19.acquisition_s, c19.technical_loss) == (0.25, 120.0, 0.05)
+    assert c19.time.least_hours_per_night == 1.0
+    (line,) = campaign.line.feeds
+    assert (line.telescope, line.exposure_s, line.overhead_s) == ("C19", 1800.0, 360.0)
+    assert line.instrument == Spectrograph(
+        0.18, 1.2, pytest.approx(5.0), 2.0, False, 45.0, 6000.0, 0.3, 4.0, 0.003
+    )
+    assert line.floor == 0.02, "what narrow lines usually leave"
+    assert campaign.line.measurement == LineMeasurement(pytest.approx(100.0), 15.0)
+    assert campaign.line.time.hours == 90.0
+    assert campaign.continuum.in_spectra
+    first, second = campaign.continuum.feeds
+    assert first.instrument == KnownCase(90.0, "r", 15.5, 180.0, 1.0, 0.3, 0.04)
+    assert (first.floor, first.exposures, first.read_out_s, first.standards_s) == (0.01, 3, 20, 300)
+    assert (first.moon_illumination_max, second.moon_illumination_max) == (0.65, 0.4)
+    assert second.instrument == Camera("V", 0.3, 0.7, 8.0, 0.1, 1.5, 13.5, 4)
+    assert (second.exposure_s, second.wanted_error, second.longest_s) == (None, 0.03, 3600.0)
     assert (campaign.limits.airmass, campaign.limits.sun_altitude_deg) == (1.8, -12.0)
     assert campaign.season_lengths_d == (90.0, 180.0)
     assert campaign.seasons == (3,)
@@ -137,19 +170,19 @@ def test_a_target_with_everything(tmp_path):
     assert (one.amplitude_mag, one.timescale_rest_d, one.lag_rest_d) == (0.12, 80.0, 14.0)
     assert (one.priority, one.iron_strength, one.notes) == (2.0, 0.6, "bright, seen before")
     assert any("both brightnesses are used" in note for note in reading.notes)
-    assert any("no stream uses the telescope F04" in note for note in reading.notes)
 
 
 def test_the_smallest_file(tmp_path):
     reading = read(tmp_path, SMALLEST, relations=KNOWN)
     campaign = reading.campaign
     assert campaign.name == "pilot"
-    assert (campaign.line.telescope, campaign.continuum.telescope) == ("C19", "C05")
+    (line,), (continuum,) = campaign.line.feeds, campaign.continuum.feeds
+    assert telescopes_of(campaign) == ("C19", "C05")
     assert campaign.season_lengths_d == (60.0, 90.0, 120.0, 180.0)
     assert campaign.seasons == (1, 2)
     # Signal-to-noise grows as the diameter: 100 on 0.5 m, and 30 x 1.9 / 2 (common practice).
-    assert campaign.continuum.instrument.signal_to_noise == 100.0
-    assert campaign.line.instrument.signal_to_noise == 28.5
+    assert continuum.instrument.signal_to_noise == 100.0
+    assert line.instrument.signal_to_noise == 28.5
     taken = {d.key: d for d in reading.defaults}
     assert taken["streams.line.exposure"] == Default(
         "streams.line.exposure", "20 min", "common practice, no source"
@@ -179,7 +212,7 @@ def test_every_default_can_be_written_into_the_file(tmp_path):
     text += f"season_lengths: {taken['season_lengths']}\nseasons: {taken['seasons']}\nstreams:\n"
     for kind in ("continuum", "line"):
         text += f"  {kind}:\n"
-        for key in ("telescope", "cadence", "exposure", "overhead", "floor", "extinction"):
+        for key in ("telescope", "cadence", "exposure", "overhead", "floor", "moon"):
             text += f"    {key}: {taken[f'streams.{kind}.{key}']}\n"
     again = read(tmp_path, text)
     assert again.campaign == reading.campaign
@@ -190,21 +223,37 @@ def test_nothing_is_called_a_default_that_was_given(tmp_path):
     keys = {d.key for d in read(tmp_path, FULL, relations=KNOWN).defaults}
     assert keys == {
         "sites.Low Fell.elevation", "sites.Low Fell.weather.clear",
-        "sites.Low Fell.weather.bad_spell", "telescopes.F04.slew", "telescopes.F05.slew",
-        "streams.line.floor", "streams.line.extinction", "streams.line.signal_to_noise",
-        "relations.MgII",
+        "sites.Low Fell.weather.bad_spell", "sites.Low Fell.seeing", "sites.Low Fell.dark_sky",
+        "sites.Low Fell.extinction", "streams.line.floor", "streams.line.exposures",
+        "streams.line.read_out", "streams.line.standards", "streams.line.moon",
+        "streams.continuum.also[1].longest_exposure", "relations.MgII",
+        *(f"telescopes.{name}.{key}" for name in ("F04", "F05")
+          for key in ("slew", "acquisition", "obstruction", "technical_loss")),
     }  # fmt: skip
+
+
+def telescopes_of(campaign):
+    return campaign.line.feeds[0].telescope, campaign.continuum.feeds[0].telescope
 
 
 def test_one_telescope_takes_both_streams(tmp_path):
     text = SMALLEST.replace("  - {name: C05, aperture: 0.5 m}\n", "")
     campaign = read(tmp_path, text).campaign
-    assert campaign.line.telescope == campaign.continuum.telescope == "C19"
+    assert telescopes_of(campaign) == ("C19", "C19")
 
 
 def test_the_other_telescope_takes_the_other_stream(tmp_path):
     campaign = read(tmp_path, SMALLEST + "streams: {continuum: {telescope: C19}}\n").campaign
-    assert (campaign.line.telescope, campaign.continuum.telescope) == ("C05", "C19")
+    assert telescopes_of(campaign) == ("C05", "C19")
+
+
+def test_a_continuum_from_spectra_needs_no_telescope(tmp_path):
+    text = SMALLEST + "streams: {continuum: {source: spectra}, line: {cadence: [2 d, 5 d]}}\n"
+    campaign = read(tmp_path, text).campaign
+    assert campaign.continuum.feeds == ()
+    assert campaign.continuum.in_spectra
+    pairs = {(la.cadence_line_nights, la.cadence_continuum_nights) for la in campaign.layouts()}
+    assert pairs == {(2.0, 2.0), (5.0, 5.0)}
 
 
 def test_usual_candidates_shrink_with_the_campaign(tmp_path):
@@ -314,7 +363,7 @@ def test_the_description_tells_values_and_defaults(tmp_path):
         "  nights: 2027-03-01 to 2028-10-31 (611)",
         "  default: streams.line.exposure = 20 min (common practice, no source)",
         "  default: limits.airmass = 2.0 (common practice, no source)",
-        "  exposure 20 min, overhead 5 min",
+        "    exposure 20 min in one frame",
         "  Corran 1: 187.68750 -5.39111 deg, z 0.05, log L5100 43.2",
     ):
         assert line in text.splitlines()

@@ -15,11 +15,25 @@ def scenario(name, success, claim=None, decision="observe"):
     nan = np.full(success.shape, np.nan)
     count = np.zeros(success.shape, dtype=int)
     table = TrialTable(
-        "One", (LAYOUT,), nan, nan, nan, nan, nan, count, count, claim, success, count
+        "One",
+        (LAYOUT,),
+        nan,
+        nan,
+        nan,
+        nan,
+        nan,
+        count,
+        count,
+        nan,
+        nan,
+        nan,
+        claim,
+        success,
+        count,
     )
     share = float(success.mean())
     score = Score(
-        "One", LAYOUT, 9, 9, share, share, share, share, 0, 0, 0, 12.5, 6, success.size, ""
+        "One", LAYOUT, 9, 9, share, share, share, share, 0, 0, 0, 12.5, 6, 4, success.size, ""
     )
     return Scenario(name, (table,), (Recommendation("One", decision, score, "", ()),))
 

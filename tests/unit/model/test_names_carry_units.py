@@ -12,6 +12,7 @@ from planner.model import campaign, observatory, plan, sky, target, trial
 
 UNITS = (
     "_d", "_s", "_deg", "_mjd", "_mag", "_dex", "_nights", "_a", "_m", "_km_s",
+    "_arcsec", "_e", "_e_s", "_fwhm", "_hours",
     "_km_s_mpc", "_per_night",
 )  # fmt: skip
 PURE = {
@@ -21,7 +22,9 @@ PURE = {
     "gain", "moon_illumination", "moon_up_fraction", "redshift", "log_luminosity", "log_mass",
     "host_fraction", "priority", "iron_strength", "agn_fraction", "flux_error", "r_max",
     "epochs_line", "epochs_continuum", "claims", "false_claims", "false_claims_lo",
-    "false_claims_hi",
+    "false_claims_hi", "throughput", "obstruction", "technical_loss", "read_share", "wanted_error",
+    "moon_illumination_max", "scale_error", "hours_shutter", "hours_per_night", "whole_nights",
+    "least_hours_per_night",
 }  # fmt: skip
 RECORDS = [
     record

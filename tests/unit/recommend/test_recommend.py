@@ -16,7 +16,7 @@ def score(layout, success, hours, trials=100, note=""):
     half = 0.06 if trials else 0.0
     return Score(
         "One", layout, 20.0, 60.0, success, success - half, success + half, success, 0.05, 0.0, 0.1,
-        hours, hours / 2, trials, note,
+        hours, hours / 2, hours / 3, trials, note,
     )  # fmt: skip
 
 
@@ -26,6 +26,7 @@ def table(reasons):
     reason = np.tile(np.array(reasons, dtype=np.int8), (len(LAYOUTS), 1))
     return TrialTable(
         "One", LAYOUTS, nan, nan, nan, nan, nan, np.zeros(shape, int), np.zeros(shape, int),
+        nan, nan, nan,
         reason == 0, reason == 0, reason,
     )  # fmt: skip
 
@@ -108,7 +109,7 @@ def test_changes_differ_from_the_best_layout_in_one_thing_each(campaign):
     ]
     longer = changes["2 seasons, the campaign a year longer"]
     assert longer.campaign.last_night - campaign.last_night == 365
-    assert changes["spectra of 80 min"].campaign.line.exposure_s == 4800
+    assert changes["spectra of 80 min"].campaign.line.feeds[0].exposure_s == 4800
 
 
 def test_nobody_is_told_to_observe_more_often_than_nightly(campaign):

@@ -17,7 +17,8 @@ def score(cadence, length, success, trials=100):
     return Score(
         target="One", layout=Layout(cadence, 1, length, 1), epochs_line=20, epochs_continuum=60,
         success=success, success_lo=success, success_hi=success, claims=success, false_claims=0,
-        false_claims_lo=0, false_claims_hi=0, hours=10, hours_line=5, trials=trials, note="",
+        false_claims_lo=0, false_claims_hi=0, hours=10, hours_line=5, hours_shutter=4, trials=trials,
+        note="",
     )  # fmt: skip
 
 
@@ -56,7 +57,7 @@ def test_the_visibility_chart_has_a_row_per_target(campaign, site):
     ra = np.array([t.ra_deg for t in campaign.targets])
     dec = np.array([t.dec_deg for t in campaign.targets])
     figure = visibility_figure(
-        campaign, SiteSky(nights, windows_of(ra, dec, site, nights, campaign.limits))
+        campaign, SiteSky(nights, *[windows_of(ra, dec, site, nights, campaign.limits)] * 2)
     )
     moon, main, bar = figure.axes
     assert [label.get_text() for label in main.get_yticklabels()] == ["One", "Two"]

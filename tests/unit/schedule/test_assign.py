@@ -18,7 +18,13 @@ def two(campaign, forecast, nights):
     """Both targets of the small campaign, wanting spectra every 3 nights for 120."""
     seasons = (Season(0, 0, 180, 181, 0),)
     prospects = [
-        Prospect(replace(forecast, name=name), nights(181), nights(181, visit_s=420.0), seasons)
+        Prospect(
+            replace(forecast, name=name),
+            (nights(181),),
+            (nights(181, visit_s=420.0, telescope="Small"),),
+            seasons,
+            "",
+        )
         for name in ("One", "Two")
     ]
     return campaign, [(p, Layout(3, 1, 120, 1)) for p in prospects]
@@ -90,7 +96,7 @@ def test_visits_sit_at_least_airmass_where_they_can(two):
 def test_no_visit_falls_on_a_lost_night(two):
     campaign, chosen = two
     requests = requests_of(campaign, chosen)
-    visits = assign(campaign, requests, {"Ridge": np.arange(181) % 5 != 0})
+    visits = assign(campaign, requests, dict.fromkeys(("Big", "Small"), np.arange(181) % 5 != 0))
     assert visits
     assert all(v.night % 5 for v in visits)
 
@@ -116,7 +122,7 @@ def test_the_more_overdue_goes_first(two):
     campaign = with_time(campaign, hours_per_night=0.6)  # one spectrum a night
     requests = [r for r in requests_of(campaign, chosen) if r.stream == "line"]
     requests[1] = replace(requests[1], cadence_nights=12.0)
-    visits = assign(campaign, requests, {"Ridge": np.arange(181) > 8})
+    visits = assign(campaign, requests, {"Big": np.arange(181) > 8})
     assert visits[0].target == "One"
     assert visits[1].target == "Two"
 
@@ -143,7 +149,8 @@ def test_used_nights_are_those_of_the_visits(two):
 def test_any_campaign_gives_a_schedule_without_faults(data, campaign, forecast, nights):
     draw = data.draw
     telescope = draw(st.sampled_from(["Big", "Small"]))
-    campaign = replace(campaign, continuum=replace(campaign.continuum, telescope=telescope))
+    feeds = (replace(campaign.continuum.feeds[0], telescope=telescope),)
+    campaign = replace(campaign, continuum=replace(campaign.continuum, feeds=feeds))
     campaign = with_time(
         campaign,
         hours=draw(st.none() | st.floats(0.1, 40)),
@@ -157,9 +164,10 @@ def test_any_campaign_gives_a_schedule_without_faults(data, campaign, forecast, 
         visit = draw(st.sampled_from([300.0, 1800.0, 5400.0, 10800.0]))
         prospect = Prospect(
             replace(forecast, name=name),
-            nights(61, keep=keep, visit_s=visit),
-            nights(61, keep=keep, visit_s=420.0),
+            (nights(61, keep=keep, visit_s=visit),),
+            (nights(61, keep=keep, visit_s=420.0, telescope=telescope),),
             (season,),
+            "",
         )
         length = draw(st.sampled_from([10.0, 30.0, 60.0]))
         chosen.append((prospect, Layout(draw(st.sampled_from([1.0, 2.5, 6.0])), 1.0, length, 1)))

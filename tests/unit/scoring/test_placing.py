@@ -1,8 +1,10 @@
+from dataclasses import replace
+
 import numpy as np
 
 from planner.model.campaign import Layout
 from planner.model.sky import Season
-from planner.scoring import place
+from planner.scoring import place, place_in
 
 
 def spans(placing):
@@ -43,9 +45,11 @@ def test_too_few_seasons_are_said(nights):
     assert placing.note == "the campaign holds one season of this target"
 
 
-def test_a_target_that_is_never_up_is_said(nights):
-    placing = place(Layout(3, 1, 120, 1), [], nights(0))
-    assert placing.note == "never observable within the limits"
+def test_a_target_that_is_never_up_is_said(prospect, nights):
+    never = replace(prospect, line=(nights(0),), seasons=(), note="never observable")
+    placing = place_in(never, Layout(3, 1, 120, 1))
+    assert placing.first.size == 0
+    assert placing.note == "never observable"
 
 
 def test_a_target_in_reach_all_year_has_a_season_a_year(nights):

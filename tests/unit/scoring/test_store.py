@@ -42,12 +42,12 @@ def test_a_store_that_cannot_be_made_is_said(tmp_path):
 
 
 def test_the_key_depends_on_everything(prospect):
-    line = prospect.line
+    (line,) = prospect.line
     changed = replace(line, flux_error=line.flux_error + 1e-12)
     keys = {
         key_of(1, prospect),
         key_of(2, prospect),
-        key_of(1, replace(prospect, line=changed)),
+        key_of(1, replace(prospect, line=(changed,))),
         key_of(1, replace(prospect, seasons=())),
         key_of(1, replace(prospect, forecast=replace(prospect.forecast, lag_obs_d=12.25))),
     }
@@ -55,9 +55,10 @@ def test_the_key_depends_on_everything(prospect):
 
 
 def test_equal_content_has_equal_keys(prospect):
+    (line,) = prospect.line
     copy = replace(
         prospect,
-        line=replace(prospect.line, night=prospect.line.night.copy(), site="Rid" + "ge"),
+        line=(replace(line, night=line.night.copy(), site="Rid" + "ge"),),
         forecast=replace(prospect.forecast),
     )
     assert key_of(prospect) == key_of(copy)

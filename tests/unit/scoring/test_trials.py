@@ -6,7 +6,8 @@ import pytest
 from planner.model.campaign import Layout
 from planner.recovery import LagResult
 from planner.scoring import REASONS, Job, Store, score_targets, scores_of, setting_of
-from planner.scoring.trials import draw_trial, judge, nights_used, run_trials, sky_of_trial
+from planner.scoring.draws import draw_trial, sky_of_trial
+from planner.scoring.trials import judge, nights_used, run_trials
 
 LAYOUTS = (Layout(3, 1, 120, 1), Layout(6, 1, 60, 1))
 
@@ -62,29 +63,26 @@ def test_the_same_draws_serve_every_layout(setting, prospect):
 def test_targets_share_the_weather_and_nothing_else(setting, prospect):
     other = replace(prospect, forecast=replace(prospect.forecast, name="Two"))
     a, b = draw_trial(setting, prospect, 4), draw_trial(setting, other, 4)
-    assert np.array_equal(a.clear["Ridge"], b.clear["Ridge"])
+    assert np.array_equal(a.usable["Big"], b.usable["Big"])
     assert a.lag_obs_d != b.lag_obs_d
-    assert not np.array_equal(a.flux_line, b.flux_line)
+    assert not np.array_equal(a.line[0].flux, b.line[0].flux)
 
 
 def test_a_longer_campaign_starts_with_the_same_weather(setting):
     longer = replace(setting, nights=setting.nights + 365)
-    short = sky_of_trial(setting, 2)["Ridge"]
-    assert np.array_equal(sky_of_trial(longer, 2)["Ridge"][: short.size], short)
+    short = sky_of_trial(setting, 2)["Big"]
+    assert np.array_equal(sky_of_trial(longer, 2)["Big"][: short.size], short)
 
 
 def test_visits_are_made_on_clear_nights_only(setting, prospect):
     draw = draw_trial(setting, prospect, 0)
-    from planner.scoring import place
+    from planner.scoring import place_in
 
-    placing = place(LAYOUTS[0], prospect.seasons, prospect.line)
-    for used, on_offer in zip(
-        nights_used(prospect, LAYOUTS[0], placing, draw.clear),
-        (prospect.continuum, prospect.line),
-        strict=True,
-    ):
+    placing = place_in(prospect, LAYOUTS[0])
+    continuum, line = nights_used(prospect, LAYOUTS[0], placing, draw.usable)
+    for used, on_offer in ((*continuum, *prospect.continuum), (*line, *prospect.line)):
         assert used.any()
-        assert draw.clear["Ridge"][on_offer.night[used]].all()
+        assert draw.usable[on_offer.telescope][on_offer.night[used]].all()
 
 
 def test_drawn_lags_follow_the_forecast(setting, prospect):
@@ -99,7 +97,7 @@ def test_an_easy_target_succeeds_and_a_noisy_one_does_not(campaign, prospect):
     )
     lively = replace(prospect.forecast, lag_obs_d=8.0, amplitude_mag=0.4, timescale_obs_d=60.0)
     easy = replace(prospect, forecast=lively)
-    noisy = replace(easy, line=replace(prospect.line, flux_error=np.full(181, 1.0)))
+    noisy = replace(easy, line=(replace(prospect.line[0], flux_error=np.full(181, 1.0)),))
     good, bad = run([Job(setting, easy, LAYOUTS[:1]), Job(setting, noisy, LAYOUTS[:1])])
     assert scores_of(easy, good)[0].success > 0.7
     assert scores_of(noisy, bad)[0].success < 0.3

@@ -4,7 +4,7 @@ import numpy as np
 import pytest
 
 from planner.base.timescale import night_of_date, utc_text
-from planner.model.observatory import Limits, Site, WeatherClimate
+from planner.model.observatory import Limits, Site, SkyQuality, WeatherClimate
 from planner.model.sky import NightState
 from planner.sky import nights_at, sun_moon_at
 
@@ -12,7 +12,15 @@ ASTRONOMICAL = Limits(2.0, -18.0, 30.0)
 
 
 def site_at(latitude, longitude, elevation=0.0):
-    return Site("here", latitude, longitude, elevation, None, WeatherClimate((1.0,) * 12, 2.0))
+    return Site(
+        "here",
+        latitude,
+        longitude,
+        elevation,
+        None,
+        WeatherClimate((1.0,) * 12, 2.0),
+        SkyQuality(1.2, (), ()),
+    )
 
 
 def nights_between(site, first, last, limits=ASTRONOMICAL):

@@ -3,12 +3,20 @@
 import numpy as np
 import pytest
 
-from planner.model.observatory import Site, WeatherClimate
+from planner.model.observatory import Site, SkyQuality, WeatherClimate
 from planner.sky import airmass_of, moon_separation, positions_at, sun_moon_at
 
 
 def site_at(latitude, longitude=0.0):
-    return Site("here", latitude, longitude, 0.0, None, WeatherClimate((1.0,) * 12, 2.0))
+    return Site(
+        "here",
+        latitude,
+        longitude,
+        0.0,
+        None,
+        WeatherClimate((1.0,) * 12, 2.0),
+        SkyQuality(1.2, (), ()),
+    )
 
 
 def at_hour_angle(site, dec, hours):

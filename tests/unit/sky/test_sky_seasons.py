@@ -2,7 +2,7 @@
 
 import numpy as np
 
-from planner.model.observatory import Limits, Site, WeatherClimate
+from planner.model.observatory import Limits, Site, SkyQuality, WeatherClimate
 from planner.model.sky import Nights, Season, Windows
 from planner.sky import nights_at, seasons_of, windows_of
 
@@ -67,7 +67,15 @@ def test_no_windows_no_seasons():
 
 
 def test_a_target_on_the_ecliptic_has_one_season_a_year_in_spite_of_the_moon():
-    site = Site("here", -30.4, -70.9, 2300.0, None, WeatherClimate((1.0,) * 12, 2.0))
+    site = Site(
+        "here",
+        -30.4,
+        -70.9,
+        2300.0,
+        None,
+        WeatherClimate((1.0,) * 12, 2.0),
+        SkyQuality(1.2, (), ()),
+    )
     limits = Limits(2.0, -18.0, 60.0)
     nights = nights_at(site, 61000, 61000 + 3 * 365, limits)
     windows = windows_of([180.0], [0.0], site, nights, limits)

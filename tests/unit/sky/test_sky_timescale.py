@@ -118,10 +118,11 @@ if shift:
     datetime.datetime = Later
 
 from planner.base.timescale import offline
-from planner.model.observatory import Limits, Site, WeatherClimate
+from planner.model.observatory import Limits, Site, SkyQuality, WeatherClimate
 from planner.sky import constraints, nights_at, observer, positions_at, seasons_of, windows_of
 
-site = Site("here", -30.4, -70.9, 2300.0, None, WeatherClimate((1.0,) * 12, 2.0))
+AIR = (WeatherClimate((1.0,) * 12, 2.0), SkyQuality(1.2, (), ()))
+site = Site("here", -30.4, -70.9, 2300.0, None, *AIR)
 limits = Limits(2.0, -18.0, 30.0)
 nights = nights_at(site, 67900, 67999, limits)
 windows = windows_of([10.0, 200.0], [-30.0, 0.0], site, nights, limits)

@@ -3,7 +3,7 @@
 import numpy as np
 import pytest
 
-from planner.model.observatory import Limits, Site, WeatherClimate
+from planner.model.observatory import Limits, Site, SkyQuality, WeatherClimate
 from planner.model.sky import NightState
 from planner.sky import moon_separation, nights_at, positions_at, sun_moon_at, windows_of
 
@@ -11,7 +11,15 @@ RIDGE_LATITUDE = -30.4
 
 
 def site_at(latitude, longitude=-70.9, name="here"):
-    return Site(name, latitude, longitude, 2000.0, None, WeatherClimate((1.0,) * 12, 2.0))
+    return Site(
+        name,
+        latitude,
+        longitude,
+        2000.0,
+        None,
+        WeatherClimate((1.0,) * 12, 2.0),
+        SkyQuality(1.2, (), ()),
+    )
 
 
 def windows_for(site, ra, dec, limits, first=61000, last=61029):

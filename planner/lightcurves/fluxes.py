@@ -1,4 +1,4 @@
-"""From the unit driver to measured fluxes.
+"""From the unit driver to fluxes.
 
 The walk is taken to be linear in flux, not in magnitude, so that the light curves stay Gaussian
 and the likelihood of a walk is their true likelihood; for the amplitudes in question (rms of 0.1
@@ -13,7 +13,7 @@ import math
 import numpy as np
 from numpy.typing import NDArray
 
-__all__ = ["FRACTION_PER_MAG", "observed_continuum", "observed_line"]
+__all__ = ["FRACTION_PER_MAG", "continuum_flux", "line_flux"]
 
 Floats = NDArray[np.float64]
 
@@ -21,14 +21,8 @@ FRACTION_PER_MAG = 0.4 * math.log(10.0)
 """Fractional flux change per small change in magnitude, from m = -2.5 log10(flux): 0.921."""
 
 
-def observed_continuum(
-    x: Floats,
-    amplitude_mag: float,
-    agn_fraction: float,
-    error: Floats | float,
-    normals: Floats,
-) -> Floats:
-    """Return the continuum's flux over its mean (AGN and host together), with noise.
+def continuum_flux(x: Floats, amplitude_mag: float, agn_fraction: float) -> Floats:
+    """Return the continuum's true flux over its mean, AGN and host together.
 
     Parameters
     ----------
@@ -38,23 +32,12 @@ def observed_continuum(
         Asymptotic rms of the AGN's own light.
     agn_fraction : float
         Share of the AGN in the mean flux of the band; the rest is constant.
-    error : array (n,) or float
-        One-sigma error of each epoch over the mean flux.
-    normals : array (n,)
-        Standard normal deviates.
     """
-    signal = agn_fraction * FRACTION_PER_MAG * amplitude_mag * x
-    return np.asarray(1.0 + signal + error * normals)
+    return np.asarray(1.0 + agn_fraction * FRACTION_PER_MAG * amplitude_mag * x)
 
 
-def observed_line(
-    y: Floats,
-    amplitude_mag: float,
-    responsivity: float,
-    error: Floats | float,
-    normals: Floats,
-) -> Floats:
-    """Return the line's flux over its mean, with noise.
+def line_flux(y: Floats, amplitude_mag: float, responsivity: float) -> Floats:
+    """Return the line's true flux over its mean.
 
     Parameters
     ----------
@@ -64,10 +47,5 @@ def observed_line(
         Asymptotic rms of the driving continuum, without host.
     responsivity : float
         Fractional change of the line per fractional change of the delayed continuum.
-    error : array (m,) or float
-        One-sigma error of each epoch over the mean flux.
-    normals : array (m,)
-        Standard normal deviates.
     """
-    signal = responsivity * FRACTION_PER_MAG * amplitude_mag * y
-    return np.asarray(1.0 + signal + error * normals)
+    return np.asarray(1.0 + responsivity * FRACTION_PER_MAG * amplitude_mag * y)

@@ -1,0 +1,101 @@
+"""Tables of what one visit measures and what the whole schedule costs."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+import numpy as np
+from astropy.table import Table
+
+from planner.export.columns import rounded, significant, table_of
+from planner.model.plan import TimeSpent
+from planner.model.trial import FeedNights, Prospect
+
+__all__ = ["epochs_table", "time_table"]
+
+
+def epochs_table(prospects: Sequence[Prospect]) -> Table:
+    """Return what one visit of each telescope to each target measures, at median conditions."""
+    rows = [
+        (p.forecast.name, kind, nights)
+        for p in prospects
+        for kind, feeds in (("line", p.line), ("continuum", p.continuum))
+        for nights in feeds
+    ]
+
+    def median(name: str) -> list[float]:
+        return [
+            float(np.median(getattr(n, name))) if n.night.size else float("nan") for _, _, n in rows
+        ]
+
+    return table_of(
+        [
+            ("target", np.array([name for name, _, _ in rows], dtype=str), None, "name"),
+            ("stream", np.array([kind for _, kind, _ in rows], dtype=str), None, "light curve"),
+            ("telescope", np.array([n.telescope for _, _, n in rows], dtype=str), None, "name"),
+            ("nights", [n.night.size for _, _, n in rows], None, "nights on which a visit fits"),
+            ("exposure", [n.exposure_s for _, _, n in rows], "s", "shutter time of one epoch"),
+            (
+                "visit",
+                rounded([n.visit_s / 3600 for _, _, n in rows], 4),
+                "h",
+                "clock time of one epoch, without standard stars",
+            ),
+            (
+                "signal_to_noise",
+                significant(median("signal_to_noise")),
+                None,
+                "images: of the flux; spectra: of the continuum per pixel (per angstrom where a "
+                "known case was given)",
+            ),
+            (
+                "flux_error",
+                significant(median("flux_error")),
+                None,
+                "fractional, calibration included; of the band or the line",
+            ),
+            ("airmass", rounded(median("airmass"), 2), None, "median of the best times"),
+            (
+                "sky",
+                rounded(median("sky_ab_mag"), 2),
+                "mag / arcsec2",
+                "AB, median of the best times",
+            ),
+            ("note", np.array([_note(n) for _, _, n in rows], dtype=str), None, "what stands out"),
+        ]
+    )
+
+
+def _note(nights: FeedNights) -> str:
+    if nights.in_spectra_of is not None:
+        return "comes with the line's spectra"
+    return "" if nights.reached else "the longest exposure does not reach the wanted error"
+
+
+def time_table(spent: Sequence[TimeSpent]) -> Table:
+    """Return the schedule's clock time by telescope and stream, for clear skies."""
+    hours = [
+        ("shutter_hours", "exposures alone"),
+        ("visit_hours", "slews, acquisition, exposures, read-out and overhead"),
+        ("standards_hours", "standard stars"),
+        ("minimum_hours", "charged for nights shorter than the telescope's least"),
+        ("clock_hours", "visits, standard stars and what is charged besides"),
+    ]
+    return table_of(
+        [
+            ("telescope", np.array([s.telescope for s in spent], dtype=str), None, "name"),
+            ("stream", np.array([s.stream for s in spent], dtype=str), None, "light curve"),
+            ("visits", [s.visits for s in spent], None, "scheduled for clear skies"),
+            ("nights", [s.nights for s in spent], None, "on which the telescope is used"),
+            *(
+                (name, rounded([getattr(s, name) for s in spent], 4), "h", words)
+                for name, words in hours
+            ),
+            (
+                "whole_nights",
+                rounded([s.whole_nights for s in spent], 2),
+                None,
+                "clock hours over the mean dark hours of a night",
+            ),
+        ]
+    )

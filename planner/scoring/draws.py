@@ -1,0 +1,171 @@
+"""Everything random of one trial: truth, sky, fluxes and noise."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Sequence
+from dataclasses import dataclass
+from typing import NamedTuple
+
+import numpy as np
+from numpy.typing import NDArray
+
+from planner.base.seeds import stream
+from planner.lightcurves import continuum_flux, draw_pair, line_flux
+from planner.model.campaign import Campaign, Simulation, SuccessRule
+from planner.model.observatory import WeatherClimate
+from planner.model.trial import FeedNights, Prospect
+from planner.weather import clear_nights
+
+__all__ = ["Draw", "Measured", "Setting", "draw_trial", "setting_of", "sky_of_trial"]
+
+Floats = NDArray[np.float64]
+
+UNLIKE = 0.1
+"""Spread of the scales and zero points of telescopes that join a stream, over the mean flux."""
+
+
+@dataclass(frozen=True, slots=True)
+class Setting:
+    """What all targets of a campaign share; sent to the workers with every task."""
+
+    seed: int
+    first_night: int
+    nights: int
+    climates: tuple[tuple[str, WeatherClimate], ...]
+    telescopes: tuple[tuple[str, str, float], ...]
+    """Name, site and share of nights lost to other things than weather."""
+    simulation: Simulation
+    success: SuccessRule
+
+
+def setting_of(campaign: Campaign) -> Setting:
+    """Return what all trials of a campaign share."""
+    return Setting(
+        seed=campaign.seed,
+        first_night=campaign.first_night,
+        nights=campaign.last_night - campaign.first_night + 1,
+        climates=tuple((s.name, s.weather) for s in campaign.sites),
+        telescopes=tuple((t.name, t.site, t.technical_loss) for t in campaign.telescopes),
+        simulation=campaign.simulation,
+        success=campaign.success,
+    )
+
+
+class Measured(NamedTuple):
+    """Fluxes and errors on every night on offer of one telescope."""
+
+    flux: Floats
+    error: Floats
+
+
+@dataclass(frozen=True, slots=True)
+class Draw:
+    """One trial's truth, and its fluxes on every night on offer, whatever the layout."""
+
+    lag_obs_d: float
+    usable: dict[str, NDArray[np.bool_]]
+    """By telescope: usable nights, counted from the campaign's first."""
+    continuum: tuple[Measured, ...]
+    """By telescope, as in the prospect."""
+    line: tuple[Measured, ...]
+
+
+def draw_trial(setting: Setting, prospect: Prospect, trial: int) -> Draw:
+    """Draw everything random of one trial of one target, except the resampling of its errors.
+
+    Lag, amplitude and timescale are log-normal about the forecast; the top-hat response's width
+    is a uniform share of the lag. Each night on offer has its own flux and noise, whatever layout
+    uses it. The scale error of a spectrum is one number for all that is measured in it. Telescopes
+    that join a stream have scales and zero points of their own.
+    """
+    forecast, simulation = prospect.forecast, setting.simulation
+    name = forecast.name
+    lag_z, amplitude_z, timescale_z = stream(setting.seed, "truth", name, trial).standard_normal(3)
+    lag = forecast.lag_obs_d * 10 ** (forecast.lag_scatter_dex * lag_z)
+    amplitude = forecast.amplitude_mag * 10 ** (forecast.amplitude_scatter_dex * amplitude_z)
+    timescale = forecast.timescale_obs_d * 10 ** (forecast.timescale_scatter_dex * timescale_z)
+    width = lag * stream(setting.seed, "response", name, trial).uniform(*simulation.response_width)
+    x, y = draw_pair(
+        stream(setting.seed, "driver", name, trial),
+        _all(n.best_mjd for n in prospect.continuum) - setting.first_night,
+        _all(n.best_mjd for n in prospect.line) - setting.first_night,
+        timescale,
+        lag,
+        width,
+    )
+    scale = _by_feed(
+        prospect.line,
+        stream(setting.seed, "scale", name, trial).standard_normal(y.size),
+    )
+    light = continuum_flux(x, amplitude, forecast.agn_fraction)
+    echo = line_flux(y, amplitude, simulation.responsivity)
+    return Draw(
+        lag_obs_d=lag,
+        usable=sky_of_trial(setting, trial),
+        continuum=_measured(setting, prospect.continuum, light, scale, "continuum", name, trial),
+        line=_measured(setting, prospect.line, echo, scale, "line", name, trial),
+    )
+
+
+def _all(parts: Iterable[Floats]) -> Floats:
+    return np.concatenate(list(parts))
+
+
+def _by_feed(feeds: Sequence[FeedNights], values: Floats) -> list[Floats]:
+    """Cut values over all nights of a stream into those of each telescope."""
+    return np.split(values, np.cumsum([n.night.size for n in feeds])[:-1])
+
+
+def _measured(
+    setting: Setting,
+    feeds: Sequence[FeedNights],
+    truth: Floats,
+    scale: Sequence[Floats],
+    kind: str,
+    name: str,
+    trial: int,
+) -> tuple[Measured, ...]:
+    """Return what each telescope of a stream measures on each of its nights."""
+    noise = stream(setting.seed, f"noise {kind}", name, trial).standard_normal(truth.size)
+    joining = stream(setting.seed, f"joining {kind}", name, trial).standard_normal((len(feeds), 2))
+    parts = []
+    for i, (feed, flux, z) in enumerate(
+        zip(feeds, _by_feed(feeds, truth), _by_feed(feeds, noise), strict=True)
+    ):
+        own = np.sqrt(np.maximum(feed.flux_error**2 - feed.scale_error**2, 0.0))
+        shared = _shared_error(feed, i, scale)
+        gain, zero = (1.0, 0.0) if i == 0 else (1.0, 0.0) + UNLIKE * np.tanh(joining[i])
+        parts.append(
+            Measured(gain * (flux * (1.0 + shared) + own * z) + zero, gain * feed.flux_error)
+        )
+    return tuple(parts)
+
+
+def _shared_error(feed: FeedNights, number: int, scale: Sequence[Floats]) -> Floats | float:
+    """Return the relative error that each night has in common with all of its spectrum."""
+    if feed.scale_error == 0.0:
+        return 0.0
+    spectrum = number if feed.in_spectra_of is None else feed.in_spectra_of
+    return feed.scale_error * scale[spectrum]
+
+
+def sky_of_trial(setting: Setting, trial: int) -> dict[str, NDArray[np.bool_]]:
+    """Return each telescope's usable nights in one trial.
+
+    The weather of a site is the same for every target and telescope; what is lost to technical
+    trouble is drawn night by night for each telescope.
+    """
+    nights = np.arange(setting.first_night, setting.first_night + setting.nights)
+    clear = {
+        site: clear_nights(
+            climate,
+            nights,
+            stream(setting.seed, "weather", site, trial).uniform(size=(1, nights.size)),
+        )[0]
+        for site, climate in setting.climates
+    }
+    return {
+        name: clear[site]
+        & (stream(setting.seed, "technical", name, trial).uniform(size=nights.size) >= loss)
+        for name, site, loss in setting.telescopes
+    }
