@@ -28,7 +28,15 @@ from planner.model.plan import Help, Plan, Recommendation, SiteSky
 from planner.model.target import Forecast, Target
 from planner.model.trial import Prospect, Score, TrialTable
 from planner.recommend import Change, changes_for, choose, helps_of, recommend
-from planner.schedule import Request, assign, planned, requests_of, time_spent, used_nights
+from planner.schedule import (
+    Request,
+    assign,
+    hours_by_target,
+    planned,
+    requests_of,
+    time_spent,
+    used_nights,
+)
 from planner.scoring import (
     Job,
     Progress,
@@ -294,6 +302,7 @@ def make_plan(
         visits=tuple(visits),
         unplaced=tuple(unplaced),
         time_spent=time_spent(campaign, visits, dark_hours(skies)),
+        hours_scheduled=hours_by_target(campaign, visits),
         executed=executed,
         run=run_record(reading),
     )
@@ -340,7 +349,7 @@ def write_plan(plan: Plan, reading: Reading, folder: Path) -> None:
         "windows": export.windows_table(names, plan.skies),
         "seasons": export.seasons_table(plan.campaign, plan.prospects),
         "scores": export.scores_table(plan.scores),
-        "recommendation": export.recommendation_table(plan.recommendations, plan.executed),
+        "recommendation": export.recommendation_table(plan),
         "schedule": schedule,
         "epochs": export.epochs_table(plan.prospects),
         "time": export.time_table(plan.time_spent),
@@ -353,7 +362,10 @@ def write_plan(plan: Plan, reading: Reading, folder: Path) -> None:
     for name, image in figures.items():
         write_bytes(folder / "figures" / f"{file_name(name)}.png", image)
     defaults = [(d.key, d.value, d.reason) for d in reading.defaults]
-    write_bytes(folder / "report.html", report.page(plan, figures, defaults))
+    write_bytes(
+        folder / "report.html",
+        report.page(plan, figures, export.as_rows(tables["epochs"]), defaults),
+    )
     export.run_json(plan.run, folder / "run.json")
 
 

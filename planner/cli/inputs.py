@@ -4,12 +4,16 @@ from __future__ import annotations
 
 from argparse import Namespace
 from pathlib import Path
+from typing import TYPE_CHECKING
 
 from planner.base.errors import InputError
 from planner.cli.shared import claim, give, read, say, say_json
 from planner.cli.terminal import significant, table_text
 
-__all__ = ["check", "lags", "nights", "start"]
+if TYPE_CHECKING:
+    from astropy.table import Table
+
+__all__ = ["check", "lags", "nights", "start", "trace"]
 
 
 def start(options: Namespace) -> int:
@@ -37,13 +41,20 @@ def start(options: Namespace) -> int:
 
 def check(options: Namespace) -> int:
     """Read and validate a campaign file and print what was understood."""
+    from planner import export, pipeline
     from planner.campaign import as_dict, describe
 
     reading = read(options)
     if options.json:
         say_json(as_dict(reading))
-    else:
-        say(describe(reading))
+        return 0
+    say(describe(reading))
+    campaign = reading.campaign
+    prospects = pipeline.prospects_of(
+        campaign, pipeline.forecast_targets(campaign), pipeline.observe_sky(campaign)
+    )
+    say("One epoch, at the median conditions of the season")
+    say(_epochs_text(export.epochs_table(prospects)))
     return 0
 
 
@@ -54,7 +65,11 @@ def lags(options: Namespace) -> int:
     reading = read(options)
     folder = claim(options, reading)
     forecasts = pipeline.forecast_targets(reading.campaign)
-    if give(options, folder, {"lags": export.lags_table(forecasts)}):
+    prospects = pipeline.prospects_of(
+        reading.campaign, forecasts, pipeline.observe_sky(reading.campaign)
+    )
+    epochs = export.epochs_table(prospects)
+    if give(options, folder, {"lags": export.lags_table(forecasts), "epochs": epochs}):
         return 0
     rows = []
     for f in forecasts:
@@ -88,6 +103,68 @@ def lags(options: Namespace) -> int:
             rows,
         )
     )
+    say("\nOne epoch, at the median conditions of the season:")
+    say(_epochs_text(epochs))
+    return 0
+
+
+def _epochs_text(table: Table) -> str:
+    """Return what one visit measures as a text table."""
+    return table_text(
+        [
+            "target",
+            "stream",
+            "telescope",
+            "exposure [s]",
+            "S/N",
+            "flux error [%]",
+            "visit [h]",
+            "airmass",
+            "sky [mag/arcsec2]",
+            "note",
+        ],
+        [
+            [
+                str(row["target"]),
+                str(row["stream"]),
+                str(row["telescope"]),
+                f"{row['exposure']:.0f}",
+                significant(row["signal_to_noise"], 3),
+                significant(100 * row["flux_error"], 2),
+                f"{row['visit']:.2f}",
+                f"{row['airmass']:.2f}",
+                f"{row['sky']:.1f}",
+                str(row["note"]) if row["nights"] else "no window holds a visit",
+            ]
+            for row in table
+        ],
+    )
+
+
+def trace(options: Namespace) -> int:
+    """Print how each number of one target came about."""
+    from dataclasses import replace
+
+    from planner import pipeline, report
+
+    campaign = read(options).campaign
+    found = next((t for t in campaign.targets if t.name == options.target), None)
+    if found is None:
+        known = ", ".join(t.name for t in campaign.targets)
+        raise InputError(f"{options.file}: no target {options.target}; expected one of {known}")
+    alone = replace(campaign, targets=(found,))
+    (prospect,) = pipeline.prospects_of(
+        alone, pipeline.forecast_targets(alone), pipeline.observe_sky(alone)
+    )
+    sections = report.trace(alone, found, prospect)
+    if options.json:
+        say_json({title: [s._asdict() for s in steps] for title, steps in sections.items()})
+        return 0
+    say(f"{found.name}, z = {found.redshift:g}")
+    for title, steps in sections.items():
+        say(f"\n{title}")
+        for step in steps:
+            say(f"  {step.what}: {step.value} ({step.how})")
     return 0
 
 

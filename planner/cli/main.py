@@ -61,7 +61,7 @@ def _command(name: str) -> Callable[[argparse.Namespace], int]:
 
 
 _MODULES = {
-    **dict.fromkeys(("start", "check", "lags", "nights"), "planner.cli.inputs"),
+    **dict.fromkeys(("start", "check", "lags", "nights", "trace"), "planner.cli.inputs"),
     **dict.fromkeys(("score", "schedule", "plan", "compare"), "planner.cli.planning"),
     "recover": "planner.cli.own_curves",
 }
@@ -102,6 +102,10 @@ def _parser() -> argparse.ArgumentParser:
         parents=[shared],
     )
     compare.add_argument("files", type=Path, nargs="+", metavar="FILE", help="campaign files")
+    words = "how each number of one target came about: inputs, formulas, sources"
+    trace = commands.add_parser("trace", help=words, description=words, parents=[shared])
+    trace.add_argument("file", type=Path, metavar="FILE", help="campaign file (YAML)")
+    trace.add_argument("target", metavar="TARGET", help="name of a target")
     _add_recover(commands, shared)
     start = commands.add_parser(
         "start",

@@ -131,7 +131,7 @@ def plan(options: Namespace) -> int:
         pipeline.write_plan(made, reading, folder)
     finally:
         store.close()
-    table = export.recommendation_table(made.recommendations, made.executed)
+    table = export.recommendation_table(made)
     if options.json:
         say_json({"folder": str(folder), "recommendation": export.as_rows(table)})
         return 0
@@ -172,7 +172,11 @@ def plan(options: Namespace) -> int:
     )
     for r in made.recommendations:
         say(f"\n{r.target}: {r.why}.")
-    say(f"\n{len(made.visits)} visits scheduled; everything stands in {folder}/report.html")
+    clock = sum(t.clock_hours for t in made.time_spent)
+    say(
+        f"\n{len(made.visits)} visits scheduled, {clock:.0f} clock hours if every night is clear; "
+        f"everything stands in {folder}/report.html"
+    )
     say(CAUTION)
     return 0
 

@@ -11,7 +11,7 @@ from astropy.table import Table
 from planner.base.timescale import utc_text
 from planner.export.columns import dates, rounded, significant, table_of
 from planner.model.campaign import Campaign
-from planner.model.plan import Recommendation, SiteSky, Visit
+from planner.model.plan import Plan, SiteSky, Visit
 from planner.model.target import Forecast
 from planner.model.trial import Prospect, Score
 from planner.sky import airmass_of, moon_separation, positions_at
@@ -200,17 +200,17 @@ def scores_table(scores: Sequence[Score]) -> Table:
             ),
             ("hours", rounded([x.hours for x in s], 2), "h", "clock hours, both streams"),
             ("hours_line", rounded([x.hours_line for x in s], 2), "h", "clock hours, line stream"),
+            ("hours_shutter", rounded([x.hours_shutter for x in s], 2), "h", "exposures alone"),
             ("trials", [x.trials for x in s], None, "0: the layout cannot be scheduled"),
             ("note", np.array([x.note for x in s], dtype=str), None, "what stands in the way"),
         ]
     )
 
 
-def recommendation_table(
-    recommendations: Sequence[Recommendation], executed: dict[str, Score]
-) -> Table:
+def recommendation_table(plan: Plan) -> Table:
     """Return the advised layout of each target, alone and in the schedule of all targets."""
     nan = float("nan")
+    recommendations, executed = plan.recommendations, plan.executed
 
     def of(name: str, digits: int) -> Any:
         return rounded(
@@ -249,7 +249,8 @@ def recommendation_table(
             ("success_lo", of("success_lo", 4), None, "lower end, 90 % confidence (Wilson)"),
             ("success_hi", of("success_hi", 4), None, "upper end, 90 % confidence (Wilson)"),
             ("false_claims", of("false_claims", 4), None, "share of trials with a wrong claim"),
-            ("hours", of("hours", 2), "h", "clock hours to expect, both streams"),
+            ("hours", of("hours", 2), "h", "clock hours to expect in average weather, alone"),
+            ("hours_shutter", of("hours_shutter", 2), "h", "of these, exposures alone"),
             (
                 "success_scheduled",
                 rounded([nan if s is None else s.success for s in run], 4),
@@ -267,6 +268,12 @@ def recommendation_table(
                 rounded([nan if s is None else s.epochs_line for s in run], 1),
                 None,
                 "line epochs that the schedule leaves, mean over weather",
+            ),
+            (
+                "hours_scheduled",
+                rounded([plan.hours_scheduled.get(r.target, 0.0) for r in recommendations], 4),
+                "h",
+                "clock hours charged by the schedule for clear skies; add up to those of time.ecsv",
             ),
             ("why", [r.why for r in recommendations], None, "reason in words"),
             (

@@ -118,6 +118,8 @@ class Plan:
     visits: tuple[Visit, ...]
     unplaced: tuple[Unplaced, ...]
     time_spent: tuple[TimeSpent, ...]
+    hours_scheduled: dict[str, float]
+    """By target: clock hours that the schedule for clear skies charges it."""
     executed: dict[str, Score]
     """By target: the schedule as the weather would let it happen."""
     run: dict[str, Any]

@@ -7,5 +7,6 @@ safe for colour-blind eyes and doubled by shape or label; every figure carries i
 from planner.report.figures import example_figure, success_figure, visibility_figure
 from planner.report.page import page
 from planner.report.style import png
+from planner.report.trace import Step, trace
 
-__all__ = ["example_figure", "page", "png", "success_figure", "visibility_figure"]
+__all__ = ["Step", "example_figure", "page", "png", "success_figure", "trace", "visibility_figure"]

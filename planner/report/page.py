@@ -12,7 +12,12 @@ from planner.model.trial import Score
 __all__ = ["page"]
 
 
-def page(plan: Plan, figures: dict[str, bytes], defaults: list[tuple[str, str, str]]) -> bytes:
+def page(
+    plan: Plan,
+    figures: dict[str, bytes],
+    epochs: list[dict[str, Any]],
+    defaults: list[tuple[str, str, str]],
+) -> bytes:
     """Return the report as HTML.
 
     Parameters
@@ -20,6 +25,8 @@ def page(plan: Plan, figures: dict[str, bytes], defaults: list[tuple[str, str, s
     plan : Plan
     figures : dict of str to PNG bytes
         ``visibility <site>``, ``success <target>`` and ``example <target>``.
+    epochs : list of dict
+        What one visit of each telescope to each target measures: the rows of the epochs' table.
     defaults : list of (key, value, reason)
         Defaults taken in the campaign file.
     """
@@ -32,14 +39,16 @@ def page(plan: Plan, figures: dict[str, bytes], defaults: list[tuple[str, str, s
     images = {name: f"data:image/png;base64,{b64encode(b).decode()}" for name, b in figures.items()}
     return template.render(
         plan=plan,
-        cards=[_card(plan, i, images) for i in range(len(plan.recommendations))],
+        cards=[_card(plan, i, images, epochs) for i in range(len(plan.recommendations))],
         summary=_summary(plan),
         visibility={site: images[f"visibility {site}"] for site in plan.skies},
         defaults=defaults,
     ).encode()
 
 
-def _card(plan: Plan, index: int, images: dict[str, str]) -> dict[str, Any]:
+def _card(
+    plan: Plan, index: int, images: dict[str, str], epochs: list[dict[str, Any]]
+) -> dict[str, Any]:
     recommendation = plan.recommendations[index]
     name = recommendation.target
     return {
@@ -48,6 +57,7 @@ def _card(plan: Plan, index: int, images: dict[str, str]) -> dict[str, Any]:
         "spread": 10 ** plan.forecasts[index].lag_scatter_dex,
         "advice": recommendation,
         "executed": plan.executed.get(name),
+        "epochs": [row for row in epochs if row["target"] == name],
         "grid": images.get(f"success {name}"),
         "example": images.get(f"example {name}"),
     }

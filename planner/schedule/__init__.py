@@ -6,7 +6,15 @@ The same rule run under simulated weather says which visits the campaign would r
 """
 
 from planner.schedule.assign import assign, planned, used_nights
-from planner.schedule.ledger import time_spent
 from planner.schedule.requests import Request, requests_of
+from planner.schedule.spent import hours_by_target, time_spent
 
-__all__ = ["Request", "assign", "planned", "requests_of", "time_spent", "used_nights"]
+__all__ = [
+    "Request",
+    "assign",
+    "hours_by_target",
+    "planned",
+    "requests_of",
+    "time_spent",
+    "used_nights",
+]

@@ -2,16 +2,12 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
 from dataclasses import dataclass, field
-
-import numpy as np
 
 from planner.model.campaign import Campaign
 from planner.model.observatory import TimeAllotment
-from planner.model.plan import TimeSpent, Visit
 
-__all__ = ["Ledgers", "time_spent"]
+__all__ = ["Ledgers"]
 
 SLACK_H = 1e-9
 """Against rounding."""
@@ -97,63 +93,3 @@ class Ledgers:
         self.telescopes[telescope].book(hours)
         self.streams[stream].book(hours)
         self.booked[telescope] = sorted([*self.booked[telescope], (start_mjd, end_mjd)])
-
-
-def time_spent(
-    campaign: Campaign, visits: Sequence[Visit], dark_hours: dict[str, float]
-) -> tuple[TimeSpent, ...]:
-    """Add up a schedule's time by telescope and stream.
-
-    Parameters
-    ----------
-    campaign : Campaign
-    visits : sequence of Visit
-    dark_hours : dict of str to float
-        By site: mean dark hours of the campaign's nights.
-
-    Returns
-    -------
-    tuple of TimeSpent
-        What is charged for nights shorter than the telescope's least is shared between its
-        streams by the hours they work in that night.
-    """
-    rows = []
-    nightly: dict[tuple[str, int], dict[str, float]] = {}
-    standards = {
-        (feed.telescope, stream.kind): feed.standards_s / 3600
-        for stream in (campaign.line, campaign.continuum)
-        for feed in stream.feeds
-    }
-    for v in visits:
-        work = nightly.setdefault((v.telescope, v.night), {})
-        first = v.stream not in work
-        work[v.stream] = work.get(v.stream, standards[v.telescope, v.stream] if first else 0.0)
-        work[v.stream] += (v.end_mjd - v.start_mjd) * 24
-    extra: dict[tuple[str, str], float] = {}
-    for (telescope, _), work in nightly.items():
-        least, worked = campaign.telescope(telescope).time.least_hours_per_night, sum(work.values())
-        for stream, hours in work.items():
-            missing = max(0.0, least - worked) * hours / worked
-            extra[telescope, stream] = extra.get((telescope, stream), 0.0) + missing
-    for (telescope, stream), standards_h in standards.items():
-        mine = [v for v in visits if (v.telescope, v.stream) == (telescope, stream)]
-        nights = len({v.night for v in mine})
-        visit_h = float(np.sum([(v.end_mjd - v.start_mjd) * 24 for v in mine]))
-        minimum_h = extra.get((telescope, stream), 0.0)
-        clock = visit_h + nights * standards_h + minimum_h
-        site = campaign.site(telescope).name
-        rows.append(
-            TimeSpent(
-                telescope=telescope,
-                stream=stream,
-                visits=len(mine),
-                nights=nights,
-                shutter_hours=float(np.sum([v.exposure_s for v in mine])) / 3600,
-                visit_hours=visit_h,
-                standards_hours=nights * standards_h,
-                minimum_hours=minimum_h,
-                clock_hours=clock,
-                whole_nights=clock / dark_hours[site] if dark_hours[site] else 0.0,
-            )
-        )
-    return tuple(rows)

@@ -90,10 +90,10 @@ def depth_of(
     line_a = LINES[forecast.line].wavelength_rest_a * stretch
     imaging = kind == "continuum"
     if isinstance(instrument, Spectrograph):
-        magnitude = ab_magnitude_at(target, line_a, campaign.cosmology)
+        wavelength, magnitude = line_a, ab_magnitude_at(target, line_a, campaign.cosmology)
     else:
+        wavelength = BANDS[instrument.band].pivot_a if imaging else line_a
         magnitude = magnitude_in(target, instrument.band, campaign.cosmology)
-    wavelength = BANDS[instrument.band].pivot_a if imaging else line_a
     known_sky = np.nan
     if isinstance(instrument, KnownCase):
         altitude = np.degrees(np.arcsin(1 / instrument.airmass))

@@ -7,6 +7,7 @@ from collections.abc import Mapping
 import numpy as np
 from numpy.typing import NDArray
 
+from planner.base.errors import InputError
 from planner.model.campaign import Campaign
 from planner.model.observatory import Feed, TimeAllotment
 from planner.model.plan import SiteSky
@@ -22,6 +23,8 @@ __all__ = ["prospect_of"]
 Floats = NDArray[np.float64]
 
 SECONDS_PER_DAY = 86400.0
+WITH_NARROW_LINES = ("Hbeta", "Halpha")
+"""Broad lines with strong narrow lines in the same spectrum: [O III], [N II], [S II]."""
 TIMES = 7
 """Times of a window that are tried for the smallest error."""
 BETTER = 0.995
@@ -38,6 +41,7 @@ def prospect_of(
     window and the telescope is ours.
     """
     target = campaign.targets[index]
+    _refuse_missing_narrow_lines(campaign, forecast)
     line = tuple(
         _feed_nights(campaign, "line", feed, target, index, forecast, skies)
         for feed in campaign.line.feeds
@@ -55,6 +59,16 @@ def prospect_of(
     seasons = tuple(seasons_of(_windows_of(line[0], index), sky.nights))
     note = "" if seasons else _why_none(sky, index, line[0])
     return Prospect(forecast, line, tuple(continuum), seasons, note)
+
+
+def _refuse_missing_narrow_lines(campaign: Campaign, forecast: Forecast) -> None:
+    measurement = campaign.line.measurement
+    narrow = measurement is not None and measurement.narrow_width_a is not None
+    if narrow and forecast.line not in WITH_NARROW_LINES:
+        raise InputError(
+            f"target {forecast.name}: no narrow lines lie beside {forecast.line} to scale its "
+            "spectra with; choose the calibration `star in slit` or `absolute`"
+        )
 
 
 def _why_none(sky: SiteSky, index: int, line: FeedNights) -> str:

@@ -10,6 +10,7 @@ import sys
 import time
 from pathlib import Path
 
+import numpy as np
 import pandas as pd
 import pytest
 from astropy.table import QTable, Table
@@ -26,16 +27,20 @@ targets:
   - {name: North, ra: "12:10:00", dec: "+80:00:00", redshift: 0.03,
      magnitude: {band: V, value: 15.5}}
 site: {name: Ridge, latitude: -30.4 deg, longitude: -70.9 deg, weather: {clear: 75 %}}
-telescopes: [{name: Big, aperture: 2 m}, {name: Small, aperture: 0.5 m}]
+telescopes:
+  - {name: Big, aperture: 2 m, time: {least_hours_per_night: 2}}
+  - {name: Small, aperture: 0.5 m}
 streams:
   continuum: {telescope: Small, cadence: 1 night}
-  line: {telescope: Big, cadence: [3 nights, 6 nights]}
+  line: {telescope: Big, cadence: [3 nights, 6 nights], standards: 15 min}
 season_lengths: [60 d, 120 d]
 seasons: [1, 2]
 simulation: {trials: 20, resamples: 30}
 """
 
-TABLES = ("lags", "windows", "seasons", "scores", "recommendation", "schedule")
+TABLES = (
+    "lags", "windows", "seasons", "epochs", "scores", "recommendation", "schedule", "time",
+)  # fmt: skip
 
 
 @pytest.fixture
@@ -129,6 +134,33 @@ def test_scheduled_visits_stay_in_windows_and_apart(planned):
     for _, of_telescope in schedule.groupby("telescope"):
         visits = of_telescope.sort_values("start_utc")
         assert (visits["start_utc"].iloc[1:].values >= visits["end_utc"].iloc[:-1].values).all()
+
+
+@pytest.mark.slow
+def test_hours_and_nights_add_up_to_the_minute(planned):
+    schedule = Table.read(planned / "schedule.ecsv").to_pandas()
+    advice = Table.read(planned / "recommendation.ecsv")
+    spent = Table.read(planned / "time.ecsv").to_pandas().set_index(["telescope", "stream"])
+    minute = 1 / 60
+    length = pd.to_datetime(schedule["end_utc"]) - pd.to_datetime(schedule["start_utc"])
+    schedule["hours"] = length.dt.total_seconds() / 3600
+    for key, visits in schedule.groupby(["telescope", "stream"]):
+        row = spent.loc[key]
+        assert row["visits"] == len(visits)
+        assert row["nights"] == visits["night"].nunique()
+        assert row["visit_hours"] == pytest.approx(visits["hours"].sum(), abs=minute)
+        assert row["shutter_hours"] == pytest.approx(visits["exposure"].sum() / 3600, abs=minute)
+        standards = row["nights"] * (0.25 if key[1] == "line" else 0.0)
+        assert row["standards_hours"] == pytest.approx(standards, abs=minute)
+        parts = row["visit_hours"] + row["standards_hours"] + row["minimum_hours"]
+        assert row["clock_hours"] == pytest.approx(parts, abs=minute)
+    nightly = schedule[schedule["telescope"] == "Big"].groupby("night")["hours"].sum() + 0.25
+    missing = (2.0 - nightly).clip(lower=0).sum()
+    assert spent["minimum_hours"].sum() == pytest.approx(missing, abs=minute)
+    assert np.sum(advice["hours_scheduled"]) == pytest.approx(
+        spent["clock_hours"].sum(), abs=minute
+    )
+    assert (advice["hours_shutter"] < advice["hours"])[advice["hours"] > 0].all()
 
 
 @pytest.mark.slow
@@ -244,6 +276,27 @@ def test_quick_commands_print_and_give_json(file, capsys, command):
     assert "One" in capsys.readouterr().out
     assert main([command, str(file), "--json"]) == 0
     assert isinstance(json.loads(capsys.readouterr().out), dict)
+
+
+def test_trace_names_inputs_formulas_and_sources(file, capsys):
+    assert main(["trace", str(file), "One"]) == 0
+    text = capsys.readouterr().out
+    for words in ("V = 14.9 (given", "Bentz et al. 2013", "1 + z = 1.02", "One epoch of the line"):
+        assert words in text
+    assert "S/N 30 at V = 16" in text
+    assert main(["trace", str(file), "North", "--json"]) == 0
+    steps = json.loads(capsys.readouterr().out)
+    assert steps["Seasons"][0]["value"] == "none"
+    assert main(["trace", str(file), "Oen"]) == 2
+    assert "no target Oen; expected one of One, =Two, North" in capsys.readouterr().err
+
+
+def test_check_and_lags_tell_what_one_epoch_measures(file, capsys):
+    for command in ("check", "lags"):
+        assert main([command, str(file)]) == 0
+        text = capsys.readouterr().out
+        assert "flux error [%]" in text
+        assert "no window holds a visit" in text, "of the target that never rises"
 
 
 def test_start_gives_a_file_that_passes_the_check(tmp_path, capsys):

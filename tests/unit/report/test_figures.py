@@ -17,8 +17,8 @@ def score(cadence, length, success, trials=100):
     return Score(
         target="One", layout=Layout(cadence, 1, length, 1), epochs_line=20, epochs_continuum=60,
         success=success, success_lo=success, success_hi=success, claims=success, false_claims=0,
-        false_claims_lo=0, false_claims_hi=0, hours=10, hours_line=5, hours_shutter=4, trials=trials,
-        note="",
+        false_claims_lo=0, false_claims_hi=0, hours=10, hours_line=5, hours_shutter=4,
+        trials=trials, note="",
     )  # fmt: skip
 
 
