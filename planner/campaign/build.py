@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Mapping, Sequence
 from typing import TypeVar
 
+from planner.campaign.cuts import success_rule
 from planner.campaign.parts import Parts
 from planner.campaign.schema import (
     LINES,
@@ -15,7 +16,7 @@ from planner.campaign.schema import (
 )
 from planner.campaign.settle import KINDS, Choices, stream_of
 from planner.campaign.streams import stream_record
-from planner.model.campaign import Campaign, Cosmology, Simulation, SuccessRule
+from planner.model.campaign import Campaign, Cosmology, Simulation
 from planner.model.observatory import (
     Limits,
     Site,
@@ -52,7 +53,7 @@ def build(
     file_name : str
         Name of the campaign where it has none.
     """
-    programme, success = _sound(parts.programme), _sound(parts.success)
+    programme = _sound(parts.programme)
     cosmology = _sound(parts.cosmology)
     if programme.name is None:
         choices.take("campaign.name", file_name, "the file's name")
@@ -73,13 +74,7 @@ def build(
         limits=_limits(_sound(parts.limits)),
         season_lengths_d=choices.season_lengths,
         seasons=choices.seasons,
-        success=SuccessRule(
-            goal=success.goal,
-            within=success.within,
-            error_below=success.error_below,
-            r_max_above=success.r_max_above,
-            sigma_above=success.sigma_above,
-        ),
+        success=success_rule(_sound(parts.success), choices),
         simulation=_simulation(_sound(parts.simulation)),
         cosmology=Cosmology(cosmology.hubble, cosmology.omega_matter),
         relations=_relations(parts, choices, relations),
@@ -168,7 +163,14 @@ def _limits(section: LimitsSection) -> Limits:
 
 def _simulation(section: SimulationSection) -> Simulation:
     least, most = section.response_width
-    return Simulation(section.trials, section.resamples, section.responsivity, (least, most))
+    return Simulation(
+        trials=section.trials,
+        resamples=section.resamples,
+        responsivity=section.responsivity,
+        response_width=(least, most),
+        method=section.method,
+        detrend=section.detrend == "yes",
+    )
 
 
 def _relations(

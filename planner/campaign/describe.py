@@ -198,12 +198,17 @@ def _rules(campaign: Campaign) -> Iterator[str]:
     yield f"goal: success in {100 * rule.goal:g} % of trials, within {100 * rule.within:g} %"
     yield (
         f"claim: error below {100 * rule.error_below:g} %, r_max above {rule.r_max_above:g}, lag "
-        f"above {rule.sigma_above:g} sigma"
+        f"above {rule.sigma_above:g} sigma, more than {100 * rule.in_peak_above:g} % in the "
+        f"primary peak, chance of a false alarm below {100 * rule.false_alarm_below:g} %"
+        f"{', correlation and likelihood agree' if rule.agree else ''}"
     )
+    if rule.robust_to:
+        yield f"tried under disturbances too: {', '.join(rule.robust_to)}"
     least, most = draw.response_width
     yield (
         f"simulation: {draw.trials} trials, {draw.resamples} resamples, responsivity "
-        f"{draw.responsivity:g}, response width {100 * least:g} to {100 * most:g} % of the lag"
+        f"{draw.responsivity:g}, method {draw.method}{', detrended' if draw.detrend else ''}, "
+        f"response width {100 * least:g} to {100 * most:g} % of the lag"
     )
     yield (
         f"cosmology: H0 {campaign.cosmology.hubble_km_s_mpc:g} km/s/Mpc, Omega_m "

@@ -235,13 +235,29 @@ class SuccessSection(Section):
         float, quantity("", "a percentage from 1 to 99, such as 80 %", lambda v: 0.01 <= v <= 0.99)
     ] = usual("80 %")
     within: Positive = usual("30 %")
-    error_below: Positive = usual("30 %")
-    r_max_above: Annotated[
-        float, number("a correlation from 0 to 1, such as 0.5", lambda v: 0 <= v < 1)
-    ] = usual("0.5")
-    sigma_above: Annotated[
-        float, number("a number from 0 to 10, such as 1", lambda v: 0 <= v <= 10)
-    ] = usual("1")
+    cuts: Annotated[str, choice(("exploratory", "usual", "strict"))] = usual("usual")
+    error_below: Positive | None = None
+    r_max_above: (
+        Annotated[float, number("a correlation from 0 to 1, such as 0.5", lambda v: 0 <= v < 1)]
+        | None
+    ) = None
+    sigma_above: (
+        Annotated[float, number("a number from 0 to 10, such as 2", lambda v: 0 <= v <= 10)] | None
+    ) = None
+    in_peak_above: (
+        Annotated[float, quantity("", "a percentage from 0 to 99: 50 %", lambda v: 0 <= v <= 0.99)]
+        | None
+    ) = None
+    false_alarm_below: (
+        Annotated[float, quantity("", "a percentage above 0, up to 100: 5 %", lambda v: 0 < v <= 1)]
+        | None
+    ) = None
+    agree: Annotated[str, choice(("yes", "no"))] | None = None
+    robust_to: Annotated[
+        tuple[Annotated[str, choice(tuple(DISTURBANCES))], ...],
+        listed("names of disturbances, such as [outliers, slow trend]"),
+        sorted_once,
+    ] = ()
 
 
 _WIDTH = "a percentage of the lag from 0 to 200, such as 50 %"
@@ -258,6 +274,8 @@ class SimulationSection(Section):
 
     trials: Annotated[int, counted("a whole number of trials: 100", 1, 100000)] = usual("100")
     resamples: Annotated[int, counted("a whole number from 10: 100", 10, 100000)] = usual("100")
+    method: Annotated[str, choice(("correlation", "likelihood"))] = usual("correlation")
+    detrend: Annotated[str, choice(("yes", "no"))] = usual("no")
     responsivity: Annotated[
         float, number("a number above 0, up to 5, such as 0.8", lambda v: 0 < v <= 5)
     ] = usual("0.8")

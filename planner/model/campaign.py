@@ -32,6 +32,18 @@ class SuccessRule:
     """Quality cut: peak of the correlation function."""
     sigma_above: float
     """Quality cut: lag over its lower error, against lags consistent with zero."""
+    in_peak_above: float = 0.0
+    """Quality cut: share of the lag's probability in the primary peak."""
+    false_alarm_below: float = 1.0
+    """Quality cut: chance that an unrelated line would do as well. Correlation: its peak must be
+    higher than those of all but this share of unrelated lines, simulated on the same epochs.
+    Likelihood: an echo must be likelier than an unrelated line by more than one over this, which
+    unrelated lines reach at most that often (Markov's inequality)."""
+    agree: bool = False
+    """Quality cut: the 68 % intervals of correlation and likelihood must overlap."""
+    robust_to: tuple[str, ...] = ()
+    """Names of disturbances, keys of `planner.model.disturbance.DISTURBANCES`, under which the
+    recommended layout is tried too."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -46,6 +58,10 @@ class Simulation:
     """Fractional change of the line flux per fractional change of the delayed continuum."""
     response_width: tuple[float, float]
     """Range of the top-hat response's full width over the lag, drawn uniformly; at most 2."""
+    method: str = "correlation"
+    """Lag recovery that judges layouts: ``"correlation"`` or ``"likelihood"``."""
+    detrend: bool = False
+    """Take a straight line off each curve before correlating."""
 
 
 @dataclass(frozen=True, slots=True)

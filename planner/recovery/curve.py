@@ -20,6 +20,16 @@ class Curve:
     flux: Floats
     error: Floats
 
+    def without_trend(self) -> Curve:
+        """Return the curve less the straight line that fits it best; too few epochs stay."""
+        if self.t_d.size < 3:
+            return self
+        sigma = np.where(self.error > 0.0, self.error, 1.0) if self.error.any() else 1.0
+        line = np.polynomial.Polynomial.fit(
+            self.t_d, self.flux, 1, w=1.0 / np.broadcast_to(sigma, self.t_d.shape)
+        )
+        return Curve(self.t_d, self.flux - line(self.t_d), self.error)
+
 
 def tidy_pair(
     t1_d: ArrayLike,

@@ -10,9 +10,10 @@ from numpy.typing import ArrayLike, NDArray
 from planner.kernels.correlation import correlate, resampled_centroids
 from planner.recovery.correlation import CENTROID_THRESHOLD, centroid, even_lags
 from planner.recovery.curve import Curve, tidy_pair
+from planner.recovery.primary import PrimaryPeak, overlap_weight, primary_peak
 from planner.recovery.search import minimum_overlap
 
-__all__ = ["LagResult", "recover_lag"]
+__all__ = ["LagResult", "peak_correlation", "recover_lag"]
 
 MIN_SHARE = 0.5
 """Fewest resamples, as a share, that must give a lag: percentiles of a minority are no interval."""
@@ -23,9 +24,9 @@ class LagResult:
     """What the correlation method makes of two light curves; lags in observed-frame days."""
 
     lag_d: float
-    """Median of the resampled centroids; NaN where there is no lag."""
+    """Median of the resampled centroids in the primary peak; NaN where there is no lag."""
     lag_lo_d: float
-    """Lower end of the central 68 % of the resampled centroids."""
+    """Lower end of the central 68 % of these centroids."""
     lag_hi_d: float
     """Upper end."""
     centroid_d: float
@@ -36,6 +37,10 @@ class LagResult:
     """Lag of that peak."""
     share: float
     """Share of the resamples that gave a lag."""
+    in_peak: float
+    """Share of these lags in the primary peak; NaN where there is no lag."""
+    aliases: tuple[tuple[float, float], ...]
+    """Lag and share of every other peak of their distribution, largest first."""
     reason: str
     """Why there is no lag; empty where there is one."""
     lags_d: NDArray[np.float64]
@@ -58,6 +63,7 @@ def recover_lag(
     rng: np.random.Generator,
     min_points: int | None = None,
     r_max_above: float = 0.0,
+    detrend: bool = False,
 ) -> LagResult:
     """Recover a lag by interpolated cross-correlation, its error by resampling.
 
@@ -65,7 +71,9 @@ def recover_lag(
     and random subset selection (Peterson et al. 1998, PASP 110, 660; Peterson et al. 2004, ApJ
     613, 682): each resample draws as many epochs of each curve as there are, with replacement,
     keeps each distinct one once with its error reduced by the square root of the times it was
-    drawn (Welsh 1999, PASP 111, 1347), adds Gaussian errors, and takes the centroid.
+    drawn (Welsh 1999, PASP 111, 1347), adds Gaussian errors, and takes the centroid. Of the
+    centroids' distribution, weighted by the epochs that overlap at each lag, only the primary
+    peak counts (`primary_peak`).
 
     Parameters
     ----------
@@ -84,6 +92,9 @@ def recover_lag(
         fewer epochs.
     r_max_above : float
         A peak that is not higher gives no lag, and no resampling is done: it would not be claimed.
+    detrend : bool
+        Take a straight line, fitted with the errors as weights, off each curve first: slow power
+        that the campaign is too short to resolve biases lags low (Welsh 1999).
 
     Returns
     -------
@@ -96,6 +107,8 @@ def recover_lag(
         If the lags are not ascending and evenly spaced.
     """
     one, two = tidy_pair(t1_d, flux1, error1, t2_d, flux2, error2)
+    if detrend:
+        one, two = one.without_trend(), two.without_trend()
     if min_points is None:
         min_points = minimum_overlap(min(one.t_d.size, two.t_d.size))
     lags = even_lags(lags_d)
@@ -103,13 +116,42 @@ def recover_lag(
     own = centroid(lags, r)
     reason = _no_centroid(own, r_max_above)
     if reason:
-        return _result(own, lags, r, np.empty(0), 0.0, reason)
+        return _result(own, lags, r, np.empty(0), 0.0, None, reason)
     drawn = _resampled(one, two, lags, resamples, rng, min_points)
     centroids = drawn[np.isfinite(drawn)]
     share = centroids.size / resamples if resamples else 0.0
     if share < MIN_SHARE:
         reason = f"only {100.0 * share:.0f} % of the resampled light curves gave a lag"
-    return _result(own, lags, r, centroids, share, reason)
+        return _result(own, lags, r, centroids, share, None, reason)
+    duration = float(max(one.t_d[-1], two.t_d[-1]))
+    peak = primary_peak(lags, centroids, overlap_weight(one.t_d, two.t_d, lags), duration)
+    return _result(own, lags, r, centroids, share, peak, "")
+
+
+def peak_correlation(
+    t1_d: ArrayLike,
+    flux1: ArrayLike,
+    error1: ArrayLike,
+    t2_d: ArrayLike,
+    flux2: ArrayLike,
+    error2: ArrayLike,
+    lags_d: ArrayLike,
+    *,
+    detrend: bool = False,
+) -> float:
+    """Return the height of the correlation function's peak if it could be claimed as a lag.
+
+    What unrelated curves reach at the same epochs tells what a peak is worth. NaN where the peak
+    has no centroid, or none at a positive lag. Arguments as for `recover_lag`.
+    """
+    one, two = tidy_pair(t1_d, flux1, error1, t2_d, flux2, error2)
+    if detrend:
+        one, two = one.without_trend(), two.without_trend()
+    least = minimum_overlap(min(one.t_d.size, two.t_d.size))
+    lags = even_lags(lags_d)
+    r = correlate(one.t_d, one.flux, two.t_d, two.flux, lags, least)
+    lag, r_max, _, _ = centroid(lags, r)
+    return r_max if lag > 0.0 else np.nan
 
 
 def _no_centroid(own: tuple[float, float, float, bool], r_max_above: float) -> str:
@@ -153,10 +195,14 @@ def _result(
     r: NDArray[np.float64],
     centroids: NDArray[np.float64],
     share: float,
+    peak: PrimaryPeak | None,
     reason: str,
 ) -> LagResult:
     """Put the record together; percentiles as for one sigma of a Gaussian."""
-    lo, lag, hi = (np.nan,) * 3 if reason else np.percentile(centroids, [15.87, 50.0, 84.13])
+    lo = lag = hi = np.nan
+    if peak is not None:
+        inside = centroids[(centroids >= peak.lo_d) & (centroids <= peak.hi_d)]
+        lo, lag, hi = np.percentile(inside, [15.87, 50.0, 84.13])
     return LagResult(
         lag_d=float(lag),
         lag_lo_d=float(lo),
@@ -165,6 +211,8 @@ def _result(
         r_max=own[1],
         peak_d=own[2],
         share=share,
+        in_peak=np.nan if peak is None else peak.share,
+        aliases=() if peak is None else peak.others,
         reason=reason,
         lags_d=lags,
         r=r,

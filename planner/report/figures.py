@@ -187,6 +187,13 @@ def example_figure(example: Example) -> Figure:
             found = result.centroids_d[np.isfinite(result.centroids_d)]
             bins = np.linspace(result.lags_d[0], result.lags_d[-1], 61)
             centroids.hist(found, bins=bins.tolist(), color=GREY)
+        if example.posterior is not None and example.posterior.density.size:
+            density = example.posterior.density
+            likely = centroids.twinx()
+            likely.plot(example.posterior.lags_d, density / density.max(), color=BLUE, lw=1.2)
+            likely.set_ylim(0, 1.6)
+            likely.set_yticks([])
+            centroids.plot([], [], color=BLUE, lw=1.2, label="likelihood")
         correlation.set_ylabel("correlation r")
         correlation.tick_params(labelbottom=False)
         centroids.set_ylabel("resamples")

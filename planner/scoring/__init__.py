@@ -11,13 +11,15 @@ from planner.scoring.example import Example, example_of
 from planner.scoring.intervals import wilson
 from planner.scoring.placing import Placing, place, place_in
 from planner.scoring.prospects import prospect_of
+from planner.scoring.recovering import REASONS, Curves
 from planner.scoring.run import Job, Progress, score_targets
 from planner.scoring.scores import scores_of
 from planner.scoring.store import Store, key_of
-from planner.scoring.trials import REASONS, Used, with_spectra
+from planner.scoring.trials import Used, with_spectra
 
 __all__ = [
     "REASONS",
+    "Curves",
     "Depth",
     "Example",
     "Job",

@@ -16,9 +16,12 @@ from planner.model.observatory import WeatherClimate
 from planner.model.trial import FeedNights, Prospect
 from planner.weather import clear_nights
 
-__all__ = ["Draw", "Measured", "Setting", "draw_trial", "setting_of", "sky_of_trial"]
+__all__ = ["UNRELATED", "Draw", "Measured", "Setting", "draw_trial", "setting_of", "sky_of_trial"]
 
 Floats = NDArray[np.float64]
+
+UNRELATED = 3
+"""Unrelated lines drawn in each trial."""
 
 UNLIKE = 0.1
 """Spread of the scales and zero points of telescopes that join a stream, over the mean flux."""
@@ -36,6 +39,8 @@ class Setting:
     """Name, site and share of nights lost to other things than weather."""
     simulation: Simulation
     success: SuccessRule
+    unrelated: bool = False
+    """The line varies like the continuum but knows nothing of it: what is claimed is false."""
 
 
 def setting_of(campaign: Campaign) -> Setting:
@@ -68,6 +73,8 @@ class Draw:
     continuum: tuple[Measured, ...]
     """By telescope, as in the prospect."""
     line: tuple[Measured, ...]
+    unrelated: tuple[tuple[Measured, ...], ...]
+    """Lines that vary in the same way and know nothing of the continuum."""
 
 
 def draw_trial(setting: Setting, prospect: Prospect, trial: int) -> Draw:
@@ -85,25 +92,39 @@ def draw_trial(setting: Setting, prospect: Prospect, trial: int) -> Draw:
     amplitude = forecast.amplitude_mag * 10 ** (forecast.amplitude_scatter_dex * amplitude_z)
     timescale = forecast.timescale_obs_d * 10 ** (forecast.timescale_scatter_dex * timescale_z)
     width = lag * stream(setting.seed, "response", name, trial).uniform(*simulation.response_width)
-    x, y = draw_pair(
-        stream(setting.seed, "driver", name, trial),
+    times = (
         _all(n.best_mjd for n in prospect.continuum) - setting.first_night,
         _all(n.best_mjd for n in prospect.line) - setting.first_night,
-        timescale,
-        lag,
-        width,
     )
+    x, y = draw_pair(stream(setting.seed, "driver", name, trial), *times, timescale, lag, width)
     scale = _by_feed(
         prospect.line,
         stream(setting.seed, "scale", name, trial).standard_normal(y.size),
     )
+    strangers = []
+    for number in range(UNRELATED):
+        other = stream(setting.seed, f"unrelated {number}", name, trial)
+        _, stranger = draw_pair(other, *times, timescale, lag, width)
+        strangers.append(
+            _measured(
+                setting,
+                prospect.line,
+                line_flux(stranger, amplitude, simulation.responsivity),
+                scale,
+                f"unrelated {number}",
+                name,
+                trial,
+            )
+        )
     light = continuum_flux(x, amplitude, forecast.agn_fraction)
     echo = line_flux(y, amplitude, simulation.responsivity)
+    line = _measured(setting, prospect.line, echo, scale, "line", name, trial)
     return Draw(
         lag_obs_d=lag,
         usable=sky_of_trial(setting, trial),
         continuum=_measured(setting, prospect.continuum, light, scale, "continuum", name, trial),
-        line=_measured(setting, prospect.line, echo, scale, "line", name, trial),
+        line=strangers.pop() if setting.unrelated else line,
+        unrelated=tuple(strangers),
     )
 
 

@@ -8,16 +8,17 @@ import numpy as np
 
 from planner.model.campaign import Layout
 from planner.model.trial import Prospect, TrialTable
-from planner.recovery import LagResult
+from planner.recovery import LagPosterior, LagResult
 from planner.scoring.draws import Setting, draw_trial
 from planner.scoring.placing import place_in
-from planner.scoring.trials import (
+from planner.scoring.recovering import (
+    FEWEST_EPOCHS,
     REASONS,
     Curves,
-    nights_used,
-    observe,
-    recover,
+    by_correlation,
+    by_likelihood,
 )
+from planner.scoring.trials import nights_used, observe
 
 __all__ = ["Example", "example_of"]
 
@@ -30,6 +31,9 @@ class Example:
     lag_true_d: float
     curves: Curves
     result: LagResult | None
+    """By the correlation; None: too few epochs."""
+    posterior: LagPosterior | None
+    """By the likelihood; None: too few epochs."""
     verdict: str
     """``success``, or why not."""
 
@@ -44,5 +48,9 @@ def example_of(setting: Setting, prospect: Prospect, layout: Layout, table: Tria
     draw = draw_trial(setting, prospect, trial)
     curves = observe(prospect, draw, nights_used(prospect, layout, placing, draw.usable))
     span = float(placing.last[-1] - placing.first[0])
-    result = recover(setting, prospect, curves, span, str(layout), trial)
-    return Example(trial, draw.lag_obs_d, curves, result, REASONS[commonest] or "success")
+    result = posterior = None
+    if min(curves.t_continuum.size, curves.t_line.size) >= FEWEST_EPOCHS:
+        result = by_correlation(setting, prospect, curves, span, str(layout), trial)
+        posterior = by_likelihood(prospect, curves, span)
+    verdict = REASONS[commonest] or "success"
+    return Example(trial, draw.lag_obs_d, curves, result, posterior, verdict)

@@ -14,12 +14,13 @@ from planner.model.campaign import Layout
 from planner.model.trial import Prospect, TrialTable
 from planner.scoring.draws import Setting
 from planner.scoring.executed import run_executed
+from planner.scoring.recovering import CHANCE
 from planner.scoring.store import Store, key_of
 from planner.scoring.trials import Used, run_trials
 
 __all__ = ["MODEL_VERSION", "Job", "Progress", "Used", "score_targets"]
 
-MODEL_VERSION = 2
+MODEL_VERSION = 3
 """Raised whenever the same inputs would give other outcomes; older kept results are then stale."""
 
 CHUNK = 10
@@ -115,9 +116,23 @@ def _all_done(
     return [done[i] for i in range(len(tasks))]
 
 
+def _drop_chance(joined: Arrays, setting: Setting) -> None:
+    """Withdraw claims whose correlation unrelated lines reach too often on the same layout."""
+    share = setting.success.false_alarm_below
+    if share >= 1.0 or setting.simulation.method != "correlation":
+        return
+    reached = np.nan_to_num(joined["r_unrelated"], nan=-1.0)
+    limit = np.quantile(reached.reshape(len(reached), -1), 1.0 - share, axis=1)
+    chance = (joined["claim"] > 0) & (joined["r_max"] <= limit[:, None])
+    joined["claim"] = joined["claim"] * ~chance
+    joined["success"] = joined["success"] * ~chance
+    joined["reason"] = np.where(chance, CHANCE, joined["reason"])
+
+
 def _table(job: Job, parts: list[Arrays]) -> TrialTable:
     """Join the chunks of one job."""
     joined = {name: np.concatenate([p[name] for p in parts], axis=1) for name in parts[0]}
+    _drop_chance(joined, job.setting)
     return TrialTable(
         target=job.prospect.forecast.name,
         layouts=job.layouts,
@@ -126,6 +141,7 @@ def _table(job: Job, parts: list[Arrays]) -> TrialTable:
         lag_lo_d=joined["lag_lo_d"],
         lag_hi_d=joined["lag_hi_d"],
         r_max=joined["r_max"],
+        r_unrelated=joined["r_unrelated"],
         epochs_line=joined["epochs_line"].astype(np.int64),
         epochs_continuum=joined["epochs_continuum"].astype(np.int64),
         hours=joined["hours"],

@@ -2,74 +2,32 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import replace
 
 import numpy as np
 from numpy.typing import NDArray
 
-from planner.base.seeds import stream
 from planner.kernels.epochs import nights_taken
-from planner.model.campaign import Layout, SuccessRule
+from planner.model.campaign import Layout
 from planner.model.trial import FeedNights, Prospect
-from planner.recovery import (
-    LagResult,
-    is_claim,
-    is_right,
-    joined,
-    lag_grid,
-    recover_lag,
-    search_range,
-)
-from planner.scoring.draws import Draw, Setting, draw_trial
+from planner.recovery import joined
+from planner.scoring.draws import UNRELATED, Draw, Setting, draw_trial
 from planner.scoring.placing import Placing, place_in
+from planner.scoring.recovering import Curves, judge, peaks_of_strangers, recover
 
 __all__ = [
-    "REASONS",
-    "Curves",
     "Used",
     "empty_table",
     "fill",
-    "judge",
     "nights_used",
     "observe",
-    "recover",
     "run_trials",
     "with_spectra",
 ]
 
-REASONS = (
-    "",
-    "cannot be scheduled",
-    "too few epochs",
-    "no peak inside the search range",
-    "weak correlation",
-    "error too large",
-    "consistent with zero lag",
-    "claimed lag is wrong",
-)
-"""Why a trial is no success, by the index kept in `TrialTable.reason`; the first means success."""
-
-FEWEST_EPOCHS = 5
-"""Below this many epochs in a stream no lag is looked for (common practice, no source)."""
-
 Floats = NDArray[np.float64]
 Used = tuple[tuple[NDArray[np.bool_], ...], tuple[NDArray[np.bool_], ...]]
 """For continuum and line, by telescope: which of the nights on offer are used."""
-
-SEARCH_SIGMAS = 2.5
-"""Lags up to so many standard deviations of the prior above its median are looked for."""
-
-
-@dataclass(frozen=True, slots=True)
-class Curves:
-    """Both light curves of one trial of one layout; times in days of UTC MJD."""
-
-    t_continuum: Floats
-    f_continuum: Floats
-    e_continuum: Floats
-    t_line: Floats
-    f_line: Floats
-    e_line: Floats
 
 
 def nights_used(
@@ -125,55 +83,6 @@ def observe(prospect: Prospect, draw: Draw, used: Used) -> Curves:
     return Curves(*streams[0], *streams[1])
 
 
-def recover(
-    setting: Setting, prospect: Prospect, curves: Curves, span_d: float, label: str, trial: int
-) -> LagResult | None:
-    """Recover the lag of one trial; None where there are too few epochs to look for one.
-
-    Parameters
-    ----------
-    span_d : float
-        First planned night to last; with the lag's prior it sets the search range.
-    label : str
-        Names the way of observing in the random stream of the resampling.
-    """
-    if min(curves.t_continuum.size, curves.t_line.size) < FEWEST_EPOCHS:
-        return None
-    forecast = prospect.forecast
-    longest = forecast.lag_obs_d * 10 ** (SEARCH_SIGMAS * forecast.lag_scatter_dex)
-    sampling = float(np.median(np.diff(curves.t_continuum)))
-    lags = lag_grid(*search_range(span_d, longest, forecast.timescale_obs_d), sampling)
-    return recover_lag(
-        curves.t_continuum,
-        curves.f_continuum,
-        curves.e_continuum,
-        curves.t_line,
-        curves.f_line,
-        curves.e_line,
-        lags,
-        setting.simulation.resamples,
-        stream(setting.seed, "resampling", forecast.name, label, trial),
-        r_max_above=setting.success.r_max_above,
-    )
-
-
-def judge(result: LagResult | None, lag_true_d: float, rule: SuccessRule) -> tuple[bool, bool, int]:
-    """Return whether a result is a claim, whether it is a success, and the reason's index."""
-    if result is None:
-        return False, False, 2
-    if result.r_max <= rule.r_max_above:
-        return False, False, 4
-    if not np.isfinite(result.lag_d):
-        return False, False, 3
-    if is_claim(result, rule):
-        right = bool(is_right(result.lag_d, lag_true_d, rule.within))
-        return True, right, 0 if right else 7
-    half_width = 0.5 * (result.lag_hi_d - result.lag_lo_d)
-    if result.lag_d <= rule.sigma_above * (result.lag_d - result.lag_lo_d):
-        return False, False, 6
-    return False, False, 5 if half_width >= rule.error_below * result.lag_d else 3
-
-
 def run_trials(
     setting: Setting, prospect: Prospect, layouts: tuple[Layout, ...], first: int, last: int
 ) -> dict[str, NDArray[np.float64]]:
@@ -210,6 +119,7 @@ _COUNTS = (
 def empty_table(layouts: int, trials: int) -> dict[str, NDArray[np.float64]]:
     """Return the columns of `TrialTable`, still without outcomes."""
     table = {name: np.full((layouts, trials), np.nan) for name in _LAGS}
+    table["r_unrelated"] = np.full((layouts, trials, UNRELATED), np.nan)
     return table | {name: np.zeros((layouts, trials)) for name in _COUNTS}
 
 
@@ -226,8 +136,8 @@ def fill(
 ) -> None:
     """Observe, recover and judge one trial, and write it into the table."""
     curves = observe(prospect, draw, used)
-    result = recover(setting, prospect, curves, span_d, label, trial)
-    claim, success, reason = judge(result, draw.lag_obs_d, setting.success)
+    found = recover(setting, prospect, curves, span_d, label, trial)
+    claim, success, reason = judge(found, draw.lag_obs_d, setting.success)
     table["epochs_continuum"][at] = curves.t_continuum.size
     table["epochs_line"][at] = curves.t_line.size
     for kind, feeds, taken in (("", prospect.continuum, used[0]), ("line", prospect.line, used[1])):
@@ -238,7 +148,14 @@ def fill(
             table["hours_line"][at] += hours if kind == "line" else 0.0
             table["hours_shutter"][at] += visits * feed.exposure_s / 3600
     table["claim"][at], table["success"][at], table["reason"][at] = claim, success, reason
-    if result is not None:
-        table["lag_d"][at] = result.lag_d
-        table["lag_lo_d"][at], table["lag_hi_d"][at] = result.lag_lo_d, result.lag_hi_d
-        table["r_max"][at] = result.r_max
+    if found is not None and setting.simulation.method == "correlation":
+        strangers = [
+            observe(prospect, replace(draw, line=line), used).f_line for line in draw.unrelated
+        ]
+        table["r_unrelated"][at][: len(strangers)] = peaks_of_strangers(
+            prospect, curves, strangers, span_d, detrend=setting.simulation.detrend
+        )
+    if found is not None:
+        table["lag_d"][at] = found.lag_d
+        table["lag_lo_d"][at], table["lag_hi_d"][at] = found.lag_lo_d, found.lag_hi_d
+        table["r_max"][at] = found.r_max

@@ -24,12 +24,12 @@ RULE = SuccessRule(goal=0.8, within=0.3, error_below=0.3, r_max_above=0.5, sigma
     ],
 )
 def test_each_cut(lag, lo, hi, r_max, claim):
-    assert passes_cuts(lag, lo, hi, r_max, RULE) == claim
+    assert passes_cuts(lag, lo, hi, r_max, 0.9, RULE) == claim
 
 
 def test_cuts_work_elementwise():
     lags = np.array([[20.0, -3.0, np.nan]])
-    assert passes_cuts(lags, lags - 1, lags + 1, 0.9, RULE).tolist() == [[True, False, False]]
+    assert passes_cuts(lags, lags - 1, lags + 1, 0.9, 0.9, RULE).tolist() == [[True, False, False]]
 
 
 def test_right_is_within_the_fraction_of_the_truth_on_either_side():

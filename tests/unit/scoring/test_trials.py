@@ -25,7 +25,7 @@ def run(jobs, **options):
 def result(**values):
     values = {
         "lag_d": 10.0, "lag_lo_d": 9.0, "lag_hi_d": 11.0, "centroid_d": 10.0, "r_max": 0.9,
-        "peak_d": 10.0, "share": 1.0, "reason": "", "lags_d": np.zeros(1), "r": np.zeros(1),
+        "peak_d": 10.0, "share": 1.0, "in_peak": 1.0, "aliases": (), "reason": "", "lags_d": np.zeros(1), "r": np.zeros(1),
         "centroids_d": np.zeros(1),
     } | values  # fmt: skip
     return LagResult(**values)

@@ -1,0 +1,213 @@
+"""The lag of one simulated campaign, by the methods an observer would use."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from typing import NamedTuple
+
+import numpy as np
+from numpy.typing import NDArray
+
+from planner.base.seeds import stream
+from planner.model.campaign import SuccessRule
+from planner.model.trial import Prospect
+from planner.recovery import (
+    Belief,
+    LagPosterior,
+    LagResult,
+    is_right,
+    lag_grid,
+    lag_posterior,
+    passes_cuts,
+    peak_correlation,
+    recover_lag,
+    search_range,
+)
+from planner.scoring.draws import Setting
+
+__all__ = [
+    "CHANCE",
+    "REASONS",
+    "Curves",
+    "Found",
+    "by_correlation",
+    "by_likelihood",
+    "judge",
+    "peaks_of_strangers",
+    "recover",
+]
+
+Floats = NDArray[np.float64]
+
+REASONS = (
+    "",
+    "cannot be scheduled",
+    "too few epochs",
+    "no peak inside the search range",
+    "weak correlation",
+    "error too large",
+    "consistent with zero lag",
+    "claimed lag is wrong",
+    "several peaks",
+    "methods disagree",
+    "could be chance",
+)
+"""Why a trial is no success, by the index kept in `TrialTable.reason`; the first means success."""
+
+CHANCE = REASONS.index("could be chance")
+
+FEWEST_EPOCHS = 5
+"""Below this many epochs in a stream no lag is looked for (common practice, no source)."""
+
+SEARCH_SIGMAS = 2.5
+"""Lags up to so many standard deviations of the prior above its median are looked for."""
+
+
+@dataclass(frozen=True, slots=True)
+class Curves:
+    """Both light curves of one trial of one layout; times in days of UTC MJD."""
+
+    t_continuum: Floats
+    f_continuum: Floats
+    e_continuum: Floats
+    t_line: Floats
+    f_line: Floats
+    e_line: Floats
+
+    def columns(self) -> tuple[Floats, Floats, Floats, Floats, Floats, Floats]:
+        """Return the six arrays in the order in which recovery takes them."""
+        return (
+            self.t_continuum,
+            self.f_continuum,
+            self.e_continuum,
+            self.t_line,
+            self.f_line,
+            self.e_line,
+        )
+
+
+class Found(NamedTuple):
+    """A recovered lag, whatever the method; NaN where there is none."""
+
+    lag_d: float
+    lag_lo_d: float
+    lag_hi_d: float
+    r_max: float
+    """Infinite for a method without correlation."""
+    in_peak: float
+    agrees: bool = True
+    """False: the 68 % interval of the other method does not overlap this one's."""
+
+
+def recover(
+    setting: Setting, prospect: Prospect, curves: Curves, span_d: float, label: str, trial: int
+) -> Found | None:
+    """Recover the lag of one trial; None where there are too few epochs to look for one.
+
+    Parameters
+    ----------
+    span_d : float
+        First planned night to last; with the lag's prior it sets the search range.
+    label : str
+        Names the way of observing in the random stream of the resampling.
+    """
+    if min(curves.t_continuum.size, curves.t_line.size) < FEWEST_EPOCHS:
+        return None
+    if setting.simulation.method == "likelihood":
+        found = _of_posterior(by_likelihood(prospect, curves, span_d))
+    else:
+        found = _of_result(by_correlation(setting, prospect, curves, span_d, label, trial))
+    if setting.success.agree and _passes(found, setting.success):
+        if setting.simulation.method == "likelihood":
+            other = _of_result(by_correlation(setting, prospect, curves, span_d, label, trial))
+        else:
+            other = _of_posterior(by_likelihood(prospect, curves, span_d))
+        overlap = other.lag_lo_d <= found.lag_hi_d and found.lag_lo_d <= other.lag_hi_d
+        found = found._replace(agrees=bool(overlap))
+    return found
+
+
+def _of_result(result: LagResult) -> Found:
+    return Found(result.lag_d, result.lag_lo_d, result.lag_hi_d, result.r_max, result.in_peak)
+
+
+def _of_posterior(result: LagPosterior) -> Found:
+    lag, lo, hi = result.lag_d, result.lag_lo_d, result.lag_hi_d
+    return Found(lag, lo, hi, np.inf, result.primary_share)
+
+
+def _search(prospect: Prospect, span_d: float) -> tuple[float, float]:
+    forecast = prospect.forecast
+    longest = forecast.lag_obs_d * 10 ** (SEARCH_SIGMAS * forecast.lag_scatter_dex)
+    return search_range(span_d, longest, forecast.timescale_obs_d)
+
+
+def by_correlation(
+    setting: Setting, prospect: Prospect, curves: Curves, span_d: float, label: str, trial: int
+) -> LagResult:
+    """Recover the lag by interpolated cross-correlation; arguments as for `recover`."""
+    sampling = float(np.median(np.diff(curves.t_continuum)))
+    return recover_lag(
+        *curves.columns(),
+        lag_grid(*_search(prospect, span_d), sampling),
+        setting.simulation.resamples,
+        stream(setting.seed, "resampling", prospect.forecast.name, label, trial),
+        r_max_above=setting.success.r_max_above,
+        detrend=setting.simulation.detrend,
+    )
+
+
+def peaks_of_strangers(
+    prospect: Prospect, curves: Curves, strangers: Sequence[Floats], span_d: float, *, detrend: bool
+) -> list[float]:
+    """Return the peak correlation of each unrelated line with the continuum.
+
+    Parameters
+    ----------
+    strangers : sequence of (m,) arrays
+        Fluxes at the line's epochs.
+    """
+    sampling = float(np.median(np.diff(curves.t_continuum)))
+    lags = lag_grid(*_search(prospect, span_d), sampling)
+    return [
+        peak_correlation(*curves.columns()[:4], flux, curves.e_line, lags, detrend=detrend)
+        for flux in strangers
+    ]
+
+
+def by_likelihood(prospect: Prospect, curves: Curves, span_d: float) -> LagPosterior:
+    """Recover the lag by the joint likelihood of both curves.
+
+    All lags of the search are held equally likely beforehand; of the variability's timescale the
+    forecast and its scatter are known, amplitude and responsivity only from the curves.
+    """
+    forecast = prospect.forecast
+    belief = Belief(
+        tau_d=forecast.timescale_obs_d, tau_dex=max(forecast.timescale_scatter_dex, 0.1)
+    )
+    return lag_posterior(*curves.columns(), *_search(prospect, span_d), belief)
+
+
+def _passes(found: Found, rule: SuccessRule) -> bool:
+    return bool(passes_cuts(*found[:5], rule))
+
+
+def judge(found: Found | None, lag_true_d: float, rule: SuccessRule) -> tuple[bool, bool, int]:
+    """Return whether a lag is a claim, whether it is a success, and the reason's index."""
+    if found is None:
+        return False, False, 2
+    if found.r_max <= rule.r_max_above:
+        return False, False, 4
+    if not np.isfinite(found.lag_d):
+        return False, False, 3
+    if _passes(found, rule):
+        if not found.agrees:
+            return False, False, 9
+        right = bool(is_right(found.lag_d, lag_true_d, rule.within))
+        return True, right, 0 if right else 7
+    if found.in_peak <= rule.in_peak_above:
+        return False, False, 8
+    if found.lag_d <= rule.sigma_above * (found.lag_d - found.lag_lo_d):
+        return False, False, 6
+    return False, False, 5
