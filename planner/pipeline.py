@@ -8,7 +8,6 @@
 
 from __future__ import annotations
 
-import re
 from collections.abc import Sequence
 from dataclasses import replace
 from pathlib import Path
@@ -16,10 +15,8 @@ from typing import Any
 
 import numpy as np
 
-from planner import export, report
 from planner.agn import forecast, relation_names
 from planner.base.errors import PlanError
-from planner.base.files import write_bytes
 from planner.base.provenance import file_hashes, planner_version, versions
 from planner.base.timescale import UT1_NOTE
 from planner.campaign import Reading, read_campaign
@@ -27,7 +24,7 @@ from planner.model.campaign import Campaign
 from planner.model.plan import Help, Plan, Recommendation, SiteSky
 from planner.model.target import Forecast, Target
 from planner.model.trial import Prospect, Score, TrialTable
-from planner.recommend import Change, changes_for, choose, helps_of, recommend
+from planner.recommend import Change, changes_for, choose, hardened, helps_of, recommend
 from planner.schedule import (
     Request,
     assign,
@@ -42,7 +39,7 @@ from planner.scoring import (
     Progress,
     Store,
     Used,
-    example_of,
+    opinions_of,
     prospect_of,
     score_targets,
     scores_of,
@@ -61,7 +58,6 @@ __all__ = [
     "recommend_all",
     "schedule_all",
     "score_all",
-    "write_plan",
 ]
 
 
@@ -286,6 +282,14 @@ def make_plan(
     advice = recommend_all(
         campaign, forecasts, tables, scores, workers=workers, store=store, progress=progress
     )
+    opinions = opinions_of(
+        setting_of(campaign),
+        [(p, a.score.layout) for p, a in zip(prospects, advice, strict=True) if a.score],
+        workers=workers,
+        store=store,
+        progress=progress,
+    )
+    advice = tuple(hardened(a, opinions, campaign.success) for a in advice)
     requests = schedule_all(campaign, prospects, advice)
     visits, unplaced = planned(campaign, requests)
     executed = execute(
@@ -299,6 +303,7 @@ def make_plan(
         trials=tables,
         scores=tuple(s for of_target in scores for s in of_target),
         recommendations=advice,
+        opinions=opinions,
         visits=tuple(visits),
         unplaced=tuple(unplaced),
         time_spent=time_spent(campaign, visits, dark_hours(skies)),
@@ -338,57 +343,3 @@ def run_record(reading: Reading) -> dict[str, Any]:
         "versions": versions(),
         "time_note": UT1_NOTE,
     }
-
-
-def write_plan(plan: Plan, reading: Reading, folder: Path) -> None:
-    """Write everything a plan holds into a folder that is ours. Raises `OutputError`."""
-    names = [t.name for t in plan.campaign.targets]
-    schedule = export.schedule_table(plan.campaign, plan.visits)
-    tables = {
-        "lags": export.lags_table(plan.forecasts),
-        "windows": export.windows_table(names, plan.skies),
-        "seasons": export.seasons_table(plan.campaign, plan.prospects),
-        "scores": export.scores_table(plan.scores),
-        "recommendation": export.recommendation_table(plan),
-        "schedule": schedule,
-        "epochs": export.epochs_table(plan.prospects),
-        "time": export.time_table(plan.time_spent),
-    }
-    for name, table in tables.items():
-        export.write_ecsv(table, folder / f"{name}.ecsv")
-    export.write_csv(schedule, folder / "schedule.csv")
-    figures = draw_figures(plan)
-    (folder / "figures").mkdir(exist_ok=True)
-    for name, image in figures.items():
-        write_bytes(folder / "figures" / f"{file_name(name)}.png", image)
-    defaults = [(d.key, d.value, d.reason) for d in reading.defaults]
-    write_bytes(
-        folder / "report.html",
-        report.page(plan, figures, export.as_rows(tables["epochs"]), defaults),
-    )
-    export.run_json(plan.run, folder / "run.json")
-
-
-def draw_figures(plan: Plan) -> dict[str, bytes]:
-    """Return every figure of a plan as PNG, by what it shows."""
-    setting = setting_of(plan.campaign)
-    figures = {
-        f"visibility {site}": report.png(report.visibility_figure(plan.campaign, sky))
-        for site, sky in plan.skies.items()
-    }
-    for prospect, table, advice in zip(
-        plan.prospects, plan.trials, plan.recommendations, strict=True
-    ):
-        if advice.score is None:
-            continue
-        scores = [s for s in plan.scores if s.target == advice.target]
-        grid = report.success_figure(scores, advice.score, plan.campaign.success.goal)
-        figures[f"success {advice.target}"] = report.png(grid)
-        example = example_of(setting, prospect, advice.score.layout, table)
-        figures[f"example {advice.target}"] = report.png(report.example_figure(example))
-    return figures
-
-
-def file_name(title: str) -> str:
-    """Return a title as a file name that any system takes."""
-    return re.sub(r"[^A-Za-z0-9+.-]+", "-", title).strip("-")

@@ -5,6 +5,7 @@ VOTable). Out: a `Reading`: the frozen campaign record, every default taken, not
 read how, and the files. Anything wrong ends in one `InputError` with every problem found.
 """
 
+from planner.campaign.cuts import cuts_named
 from planner.campaign.describe import as_dict, describe
 from planner.campaign.light_curve import LightCurve, read_light_curve
 from planner.campaign.read import Reading, read_campaign
@@ -15,6 +16,7 @@ __all__ = [
     "LightCurve",
     "Reading",
     "as_dict",
+    "cuts_named",
     "describe",
     "read_campaign",
     "read_light_curve",

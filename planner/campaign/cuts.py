@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
+from typing import Any
+
 from planner.base.quantities import in_unit
 from planner.campaign.schema import SuccessSection
 from planner.campaign.settle import Choices
 from planner.model.campaign import SuccessRule
 
-__all__ = ["CUTS", "success_rule"]
+__all__ = ["CUTS", "cuts_named", "success_rule"]
 
 CUTS = {
     # finds more lags, and more wrong ones
@@ -29,14 +31,27 @@ CUTS = {
 }  # fmt: skip
 
 
+def cuts_named(name: str) -> SuccessRule:
+    """Return the rule with the cuts of that name; the rest of it does not matter to them."""
+    values: dict[str, Any] = {
+        key: usual == "yes" if key == "agree" else _number(usual)
+        for key, usual in CUTS[name].items()
+    }
+    return SuccessRule(goal=0.8, within=0.3, **values)
+
+
+def _number(text: str) -> float:
+    return in_unit(text, "", "") if "%" in text else float(text)
+
+
 def success_rule(section: SuccessSection, choices: Choices) -> SuccessRule:
     """Return the rule; cuts that are not given are those of the named set, and noted."""
-    values: dict[str, float | bool] = {}
+    values: dict[str, Any] = {}
     for key, usual in CUTS[section.cuts].items():
         given = getattr(section, key)
         if given is None:
             choices.take(f"success.{key}", usual, f"the {section.cuts} cuts")
-            given = usual if key == "agree" else in_unit(usual, "", "") if "%" in usual else usual
+            given = usual if key == "agree" else _number(usual)
         values[key] = given == "yes" if key == "agree" else float(given)
     return SuccessRule(
         goal=section.goal, within=section.within, robust_to=section.robust_to, **values

@@ -27,6 +27,7 @@ from planner.campaign.fields import (
     sorted_once,
 )
 from planner.campaign.sections import Section, needed, usual
+from planner.model.disturbance import DISTURBANCES
 
 __all__ = [
     "BANDS", "LINES", "TOP_KEYS", "Airmass", "Band", "Candidates", "CosmologySection",

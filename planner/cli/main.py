@@ -95,6 +95,12 @@ def _parser() -> argparse.ArgumentParser:
     ):
         command = commands.add_parser(name, help=words, description=words, parents=[shared])
         command.add_argument("file", type=Path, metavar="FILE", help="campaign file (YAML)")
+        if name == "score":
+            command.add_argument(
+                "--forecast",
+                action="store_true",
+                help="no trials: rank the layouts by the information in their epochs, in seconds",
+            )
     compare = commands.add_parser(
         "compare",
         help="scenarios side by side",
@@ -117,7 +123,7 @@ def _parser() -> argparse.ArgumentParser:
 
 
 def _add_recover(commands: argparse._SubParsersAction[_Parser], shared: _Parser) -> None:
-    words = "the lag of your own two light curves, by the same method that judged the plan"
+    words = "the lag of your own two light curves, by the same methods that judged the plan"
     recover = commands.add_parser("recover", help=words, description=words, parents=[shared])
     for name in ("continuum", "line"):
         recover.add_argument(
@@ -126,6 +132,15 @@ def _add_recover(commands: argparse._SubParsersAction[_Parser], shared: _Parser)
             metavar=name.upper(),
             help=f"{name} light curve: CSV or ECSV with columns time (days), flux, flux_error",
         )
+    recover.add_argument(
+        "--cuts",
+        choices=("exploratory", "usual", "strict"),
+        default="usual",
+        help="quality cuts that a lag must pass to be claimed",
+    )
+    recover.add_argument(
+        "--detrend", action="store_true", help="take a straight line off both curves first"
+    )
 
 
 def _shared() -> _Parser:

@@ -4,10 +4,17 @@ from __future__ import annotations
 
 from argparse import Namespace
 from pathlib import Path
+from typing import TYPE_CHECKING
 
 from planner.base.errors import InputError
 from planner.cli.shared import CAUTION, claim, give, read, say, say_json, store_in
 from planner.cli.terminal import ProgressLine, table_text
+
+if TYPE_CHECKING:
+    from collections.abc import Sequence
+
+    from planner.model.campaign import Campaign
+    from planner.model.trial import Prospect
 
 __all__ = ["compare", "plan", "schedule", "score"]
 
@@ -22,6 +29,8 @@ def score(options: Namespace) -> int:
     prospects = pipeline.prospects_of(
         campaign, pipeline.forecast_targets(campaign), pipeline.observe_sky(campaign)
     )
+    if options.forecast:
+        return _forecast(options, campaign, prospects, folder)
     _, scores = pipeline.score_all(
         campaign,
         prospects,
@@ -73,6 +82,52 @@ def score(options: Namespace) -> int:
     return 0
 
 
+def _forecast(
+    options: Namespace, campaign: Campaign, prospects: Sequence[Prospect], folder: Path | None
+) -> int:
+    """Print the layouts of each target ranked by their information forecast."""
+    from planner import export
+    from planner.scoring import forecast_layouts, setting_of
+
+    forecasts = forecast_layouts(
+        setting_of(campaign),
+        prospects,
+        campaign.layouts(),
+        workers=options.workers,
+        progress=ProgressLine(quiet=options.quiet),
+    )
+    if give(options, folder, {"forecast": export.forecast_table(forecasts)}):
+        return 0
+    say(
+        table_text(
+            [
+                "target",
+                "nights per spectrum",
+                "per image",
+                "seasons",
+                "expected success",
+                "least error",
+            ],
+            [
+                [
+                    f.target,
+                    f"{f.layout.cadence_line_nights:g}",
+                    f"{f.layout.cadence_continuum_nights:g}",
+                    f"{f.layout.seasons} × {f.layout.season_length_d:g} d",
+                    f"{f.success:.0%}",
+                    f"{f.error:.0%}" if f.error < 10 else "–",
+                ]
+                for f in forecasts
+            ],
+        )
+    )
+    say(
+        "\nExpected success of a likelihood recovery that knows variability and response; trials "
+        "fall short of it."
+    )
+    return 0
+
+
 def schedule(options: Namespace) -> int:
     """Print the night-by-night schedule of all targets."""
     from planner import export, pipeline
@@ -114,6 +169,7 @@ def schedule(options: Namespace) -> int:
 def plan(options: Namespace) -> int:
     """Do the main job into one folder."""
     from planner import export, pipeline
+    from planner.writing import write_plan
 
     reading = read(options)
     if options.out is None:
@@ -128,7 +184,7 @@ def plan(options: Namespace) -> int:
             store=store,
             progress=ProgressLine(quiet=options.quiet),
         )
-        pipeline.write_plan(made, reading, folder)
+        write_plan(made, reading, folder)
     finally:
         store.close()
     table = export.recommendation_table(made)

@@ -5,9 +5,10 @@ units and descriptions, readable by ``astropy.table.QTable.read`` and by pandas;
 also plain CSV. Times are UTC.
 """
 
-from planner.export.depth_tables import epochs_table, time_table
+from planner.export.depth_tables import epochs_table, opinions_table, time_table
 from planner.export.run_record import run_json
 from planner.export.tables import (
+    forecast_table,
     lags_table,
     recommendation_table,
     schedule_table,
@@ -20,7 +21,9 @@ from planner.export.write import as_rows, write_csv, write_ecsv
 __all__ = [
     "as_rows",
     "epochs_table",
+    "forecast_table",
     "lags_table",
+    "opinions_table",
     "recommendation_table",
     "run_json",
     "schedule_table",

@@ -8,10 +8,10 @@ import numpy as np
 from astropy.table import Table
 
 from planner.export.columns import rounded, significant, table_of
-from planner.model.plan import TimeSpent
+from planner.model.plan import Opinion, TimeSpent
 from planner.model.trial import FeedNights, Prospect
 
-__all__ = ["epochs_table", "time_table"]
+__all__ = ["epochs_table", "opinions_table", "time_table"]
 
 
 def epochs_table(prospects: Sequence[Prospect]) -> Table:
@@ -70,6 +70,38 @@ def _note(nights: FeedNights) -> str:
     if nights.in_spectra_of is not None:
         return "comes with the line's spectra"
     return "" if nights.reached else "the longest exposure does not reach the wanted error"
+
+
+def opinions_table(opinions: Sequence[Opinion]) -> Table:
+    """Return the recommended layouts tried in other ways."""
+    o = opinions
+    return table_of(
+        [
+            ("target", np.array([x.target for x in o], dtype=str), None, "name"),
+            (
+                "what",
+                np.array([x.what for x in o], dtype=str),
+                None,
+                "other recovery method, line unrelated to the continuum, or a disturbance",
+            ),
+            ("success", rounded([x.success for x in o], 4), None, "share of right claims"),
+            ("success_lo", rounded([x.success_lo for x in o], 4), None, "90 % confidence (Wilson)"),
+            ("success_hi", rounded([x.success_hi for x in o], 4), None, "90 % confidence (Wilson)"),
+            (
+                "false_claims",
+                rounded([x.false_claims for x in o], 4),
+                None,
+                "share of wrong claims",
+            ),
+            (
+                "false_claims_hi",
+                rounded([x.false_claims_hi for x in o], 4),
+                None,
+                "90 % confidence (Wilson)",
+            ),
+            ("trials", [x.trials for x in o], None, "simulated campaigns"),
+        ]
+    )
 
 
 def time_table(spent: Sequence[TimeSpent]) -> Table:

@@ -14,9 +14,11 @@ from planner.model.campaign import Campaign
 from planner.model.plan import Plan, SiteSky, Visit
 from planner.model.target import Forecast
 from planner.model.trial import Prospect, Score
+from planner.scoring import LayoutForecast
 from planner.sky import airmass_of, moon_separation, positions_at
 
 __all__ = [
+    "forecast_table",
     "lags_table",
     "recommendation_table",
     "schedule_table",
@@ -203,6 +205,37 @@ def scores_table(scores: Sequence[Score]) -> Table:
             ("hours_shutter", rounded([x.hours_shutter for x in s], 2), "h", "exposures alone"),
             ("trials", [x.trials for x in s], None, "0: the layout cannot be scheduled"),
             ("note", np.array([x.note for x in s], dtype=str), None, "what stands in the way"),
+        ]
+    )
+
+
+def forecast_table(forecasts: Sequence[LayoutForecast]) -> Table:
+    """Return the information forecast of every layout, the most promising of a target first."""
+    f = forecasts
+    return table_of(
+        [
+            ("target", np.array([x.target for x in f], dtype=str), None, "name"),
+            (
+                "cadence_line",
+                [x.layout.cadence_line_nights for x in f],
+                "d",
+                "between spectra",
+            ),
+            (
+                "cadence_continuum",
+                [x.layout.cadence_continuum_nights for x in f],
+                "d",
+                "between continuum epochs",
+            ),
+            ("season_length", [x.layout.season_length_d for x in f], "d", "of each season"),
+            ("seasons", [x.layout.seasons for x in f], None, "number of seasons"),
+            (
+                "success",
+                rounded([x.success for x in f], 3),
+                None,
+                "expected where variability and response are known",
+            ),
+            ("error", significant([x.error for x in f], 2), None, "least fractional lag error"),
         ]
     )
 

@@ -9,7 +9,14 @@ are recovered.
 
 from planner.lightcurves.disturbed import draw_disturbed_pair
 from planner.lightcurves.driver import draw_pair
-from planner.lightcurves.fluxes import continuum_flux, line_flux
+from planner.lightcurves.fluxes import FRACTION_PER_MAG, continuum_flux, line_flux
 from planner.lightcurves.noise import disturbed_noise
 
-__all__ = ["continuum_flux", "disturbed_noise", "draw_disturbed_pair", "draw_pair", "line_flux"]
+__all__ = [
+    "FRACTION_PER_MAG",
+    "continuum_flux",
+    "disturbed_noise",
+    "draw_disturbed_pair",
+    "draw_pair",
+    "line_flux",
+]

@@ -10,7 +10,7 @@ from planner.model.sky import Nights, Windows
 from planner.model.target import Forecast
 from planner.model.trial import Prospect, Score, TrialTable
 
-__all__ = ["Help", "Plan", "Recommendation", "SiteSky", "TimeSpent", "Unplaced", "Visit"]
+__all__ = ["Help", "Opinion", "Plan", "Recommendation", "SiteSky", "TimeSpent", "Unplaced", "Visit"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -52,6 +52,23 @@ class Recommendation:
     def scheduled(self) -> bool:
         """Whether the target takes part in the schedule."""
         return self.decision in {"observe", "risky"}
+
+
+@dataclass(frozen=True, slots=True)
+class Opinion:
+    """The recommended layout of one target, tried in another way on the same draws."""
+
+    target: str
+    what: str
+    """``likelihood`` (or ``correlation``): the other recovery method; ``unrelated line``: a line
+    that knows nothing of the continuum, so that every claim is false; else the name of a
+    disturbance."""
+    success: float
+    success_lo: float
+    success_hi: float
+    false_claims: float
+    false_claims_hi: float
+    trials: int
 
 
 @dataclass(frozen=True, slots=True)
@@ -115,6 +132,7 @@ class Plan:
     trials: tuple[TrialTable, ...]
     scores: tuple[Score, ...]
     recommendations: tuple[Recommendation, ...]
+    opinions: tuple[Opinion, ...]
     visits: tuple[Visit, ...]
     unplaced: tuple[Unplaced, ...]
     time_spent: tuple[TimeSpent, ...]

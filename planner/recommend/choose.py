@@ -4,15 +4,16 @@ from __future__ import annotations
 
 from collections import Counter
 from collections.abc import Sequence
+from dataclasses import replace
 
 import numpy as np
 
 from planner.model.campaign import SuccessRule
-from planner.model.plan import Help, Recommendation
+from planner.model.plan import Help, Opinion, Recommendation
 from planner.model.trial import Score, TrialTable
 from planner.scoring import REASONS
 
-__all__ = ["choose", "recommend"]
+__all__ = ["choose", "hardened", "recommend"]
 
 HOPELESS = 0.25
 """A target whose best layout stays below this share of the goal, with 90 % confidence, is left out
@@ -84,6 +85,25 @@ def recommend(
         why += "; none of the changes tried would help"
     hopeless = best.success_hi < HOPELESS * rule.goal
     return Recommendation(target, "leave out" if hopeless else "risky", best, why, ranked)
+
+
+def hardened(
+    advice: Recommendation, opinions: Sequence[Opinion], rule: SuccessRule
+) -> Recommendation:
+    """Return the advice as it stands under the disturbances that the rule asks to withstand.
+
+    A target that reaches the goal undisturbed but not, with 90 % confidence, under a named
+    disturbance is risky.
+    """
+    broken = [
+        o
+        for o in opinions
+        if o.target == advice.target and o.what in rule.robust_to and o.success_lo < rule.goal
+    ]
+    if advice.decision != "observe" or not broken:
+        return advice
+    words = ", ".join(f"{o.what} ({o.success:.0%})" for o in broken)
+    return replace(advice, decision="risky", why=f"{advice.why}; but not robust to {words}")
 
 
 def _limits(table: TrialTable, score: Score) -> str:

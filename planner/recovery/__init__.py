@@ -30,6 +30,7 @@ from planner.recovery.likelihood import drw_log_likelihood
 from planner.recovery.posterior import Belief, LagPosterior, lag_posterior
 from planner.recovery.response import Response
 from planner.recovery.search import lag_grid, minimum_overlap, search_range
+from planner.recovery.walk_nodes import walk_nodes
 
 __all__ = [
     "Alias",
@@ -65,4 +66,5 @@ __all__ = [
     "peak_correlation",
     "recover_lag",
     "search_range",
+    "walk_nodes",
 ]

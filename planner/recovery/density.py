@@ -8,7 +8,7 @@ from itertools import pairwise
 import numpy as np
 from numpy.typing import NDArray
 
-__all__ = ["Alias", "normalised", "peaks", "quantiles"]
+__all__ = ["Alias", "log_integral", "normalised", "peaks", "quantiles"]
 
 Floats = NDArray[np.float64]
 
@@ -23,6 +23,14 @@ class Alias:
     lag_d: float
     share: float
     """Probability between the minima on either side."""
+
+
+def log_integral(x: Floats, log_density: Floats) -> float:
+    """Return ln of the integral of a density given by its logarithm, (k,) on ascending `x`."""
+    top = float(log_density.max())
+    if not np.isfinite(top):
+        return -np.inf
+    return top + float(np.log(np.trapezoid(np.exp(log_density - top), x)))
 
 
 def normalised(x: Floats, log_density: Floats) -> Floats:

@@ -130,6 +130,7 @@ def line_given(
     response: Response,
     scale: float,
     scale_dex: float = 0.0,
+    related: bool = True,
 ) -> tuple[Floats, Floats]:
     """Return ln p(line | continuum) for each lag, and the best scale.
 
@@ -144,6 +145,8 @@ def line_given(
     scale_dex : float
         Scatter of its log-normal prior, over which the density is averaged numerically (the
         scale enters the covariance, so there is no closed form); 0: the scale is known.
+    related : bool
+        False: of a line that varies in the same way and knows nothing of the continuum.
 
     Returns
     -------
@@ -156,6 +159,8 @@ def line_given(
     for start in range(0, lags_d.size, STACK):
         part = slice(start, start + STACK)
         cross = cross_covariance(pair.t1_d, pair.t2_d, lags_d[part], factor.tau_d, response)
+        if not related:
+            cross[:] = 0.0
         line = line_covariance(pair.t2_d, lags_d[part], factor.tau_d, response)
         density[part], best[part] = line_log_density(
             factor.walk, factor.basis, factor.y, cross, line, pair.y2, pair.e2, log_rms, spread

@@ -9,7 +9,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from planner.recovery.density import Alias, normalised, peaks, quantiles
+from planner.recovery.density import Alias, log_integral, normalised, peaks, quantiles
 from planner.recovery.joint import Factor, Pair, line_given, make_pair
 from planner.recovery.response import Response
 from planner.recovery.walk_nodes import walk_nodes
@@ -29,6 +29,9 @@ MOST = 120
 
 STEEP = 0.6
 """Greatest change of the log density between neighbours near its peak."""
+
+UNRELATED = 9
+"""Lags at which an unrelated line is looked at: only the width of its response hangs on them."""
 
 FULL = 24
 """Lags, about, at which every combination of walk and width is worked out."""
@@ -73,6 +76,10 @@ class LagPosterior:
     """Probability in the highest peak."""
     aliases: tuple[Alias, ...]
     """Peaks with 1 % of the probability or more, the highest first."""
+    log_odds: float
+    """ln of the odds that the line echoes the continuum rather than varying in the same way without
+    knowing of it, for even odds beforehand. Unrelated lines reach ln k at most once in k times
+    (Markov's inequality)."""
     reason: str
     """Why there is no lag; empty where there is one."""
     lags_d: Floats
@@ -128,9 +135,10 @@ def lag_posterior(
         return _nothing(reason)
     walks, responses, scale = _settled(pair, belief)
 
-    def mixture(lags: Floats, some: list[tuple[float, Factor]]) -> Floats:
+    def mixture(lags: Floats, some: list[tuple[float, Factor]], related: bool = True) -> Floats:
         terms = [
-            math.log(p * q) + line_given(pair, walk, lags, response, scale, belief.scale_dex)[0]
+            math.log(p * q)
+            + line_given(pair, walk, lags, response, scale, belief.scale_dex, related)[0]
             for p, walk in some
             for q, response in responses
         ]
@@ -144,12 +152,21 @@ def lag_posterior(
     if others:
         log_density = _completed(lags, scan, lambda chosen: mixture(chosen, others))
     lags, log_density = _refined(lags, log_density, lambda new: mixture(new, walks))
+    apart = np.linspace(lo_d, hi_d, UNRELATED)
+    alone = mixture(apart, walks, related=False)
     if prior is not None:
-        with np.errstate(divide="ignore"):
-            log_density = log_density + np.log(np.asarray(prior(lags), dtype=np.float64))
+        log_density, alone = (
+            value + _log(prior(at)) for value, at in ((log_density, lags), (alone, apart))
+        )
     if not np.isfinite(log_density).any():
         return _nothing("no lag in the range searched is possible under the prior")
-    return _record(lags, log_density)
+    log_odds = log_integral(lags, log_density) - log_integral(apart, alone)
+    return _record(lags, log_density, log_odds)
+
+
+def _log(density: Floats) -> Floats:
+    with np.errstate(divide="ignore"):
+        return np.asarray(np.log(np.asarray(density, dtype=np.float64)))
 
 
 def _refusal(pair: Pair, lo_d: float, hi_d: float) -> str:
@@ -220,7 +237,7 @@ def _completed(lags: Floats, scan: Floats, others: Callable[[Floats], Floats]) -
     return np.asarray(scan + np.interp(lags, lags[chosen], ratio))
 
 
-def _record(lags: Floats, log_density: Floats) -> LagPosterior:
+def _record(lags: Floats, log_density: Floats, log_odds: float) -> LagPosterior:
     """Return the posterior of a log density on a grid."""
     density = normalised(lags, log_density)
     lo, middle, hi = quantiles(lags, density, np.array([0.16, 0.5, 0.84]))
@@ -233,6 +250,7 @@ def _record(lags: Floats, log_density: Floats) -> LagPosterior:
         peak_d=float(lags[top]),
         primary_share=found[0].share,
         aliases=found,
+        log_odds=log_odds,
         reason="",
         lags_d=lags,
         density=density,
@@ -243,4 +261,4 @@ def _record(lags: Floats, log_density: Floats) -> LagPosterior:
 def _nothing(reason: str) -> LagPosterior:
     """Return the answer for data that allow no lag."""
     nan, none = math.nan, np.empty(0)
-    return LagPosterior(nan, nan, nan, nan, 0.0, (), reason, none, none, none)
+    return LagPosterior(nan, nan, nan, nan, 0.0, (), -math.inf, reason, none, none, none)

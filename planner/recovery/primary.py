@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 from numpy.typing import NDArray
@@ -61,7 +62,8 @@ def overlap_weight(t1_d: Floats, t2_d: Floats, lags_d: Floats) -> Floats:
         return np.asarray(((part >= 0) & (at <= ends[part])).sum(axis=1), dtype=np.float64)
 
     unshifted = covered(np.zeros(1))[0]
-    return np.minimum(covered(lags_d) / max(unshifted, 1.0), 1.0) ** WEIGHT_POWER
+    share = np.minimum(covered(lags_d) / max(unshifted, 1.0), 1.0)
+    return np.asarray(share**WEIGHT_POWER)
 
 
 def primary_peak(lags_d: Floats, found_d: Floats, weight: Floats, duration_d: float) -> PrimaryPeak:
@@ -90,14 +92,12 @@ def primary_peak(lags_d: Floats, found_d: Floats, weight: Floats, duration_d: fl
     density = np.exp(-0.5 * away**2) @ weights
     lows = 1 + np.flatnonzero((density[1:-1] <= density[:-2]) & (density[1:-1] < density[2:]))
     edges = np.concatenate([[0], lows, [lags_d.size - 1]])
-    tops = [
-        int(a) + int(np.argmax(density[a : b + 1]))
-        for a, b in zip(edges[:-1], edges[1:], strict=True)
-    ]
+    spans = list(pairwise(edges.tolist()))
+    tops = [a + int(np.argmax(density[a : b + 1])) for a, b in spans]
     main = int(np.argmax(density[tops]))
     peaks = [
         (float(lags_d[top]), float(np.mean((found_d >= lags_d[a]) & (found_d <= lags_d[b]))))
-        for top, a, b in zip(tops, edges[:-1], edges[1:], strict=True)
+        for top, (a, b) in zip(tops, spans, strict=True)
     ]
     others = sorted(
         (p for i, p in enumerate(peaks) if i != main and p[1] >= 0.05), key=lambda p: -p[1]

@@ -14,6 +14,7 @@ from matplotlib.image import AxesImage
 from planner.model.campaign import Campaign
 from planner.model.plan import SiteSky
 from planner.model.trial import Score
+from planner.recovery import Ambiguity
 from planner.report.style import (
     BLUE,
     GREEN,
@@ -25,9 +26,15 @@ from planner.report.style import (
     new_figure,
     styled,
 )
-from planner.scoring import Example
+from planner.scoring import Curves, Example, OwnRecovery
 
-__all__ = ["example_figure", "success_figure", "visibility_figure"]
+__all__ = [
+    "ambiguity_figure",
+    "example_figure",
+    "recovery_figure",
+    "success_figure",
+    "visibility_figure",
+]
 
 MJD_EPOCH = date(1858, 11, 17)
 
@@ -211,6 +218,56 @@ def example_figure(example: Example) -> Figure:
                 )
         centroids.set_ylim(top=1.6 * max(1.0, centroids.get_ylim()[1]))  # room for the legend
         centroids.legend(loc="upper right", fontsize=7)
+    return figure
+
+
+def ambiguity_figure(curve: Ambiguity, lag_d: float) -> Figure:
+    """Draw which other lags the recommended epochs could be mistaken for."""
+    with styled():
+        figure = new_figure(9.0, 1.9)
+        ax = figure.subplots()
+        ax.fill_between(curve.lags_d, curve.mistaken, color=ORANGE, lw=0)
+        ax.axvline(lag_d, color=GREEN, lw=1.5, ls="--", label="expected lag")
+        ax.set_xlim(curve.lags_d[0], curve.lags_d[-1])
+        ax.set_ylim(0, 0.5)
+        ax.set_xlabel("other lag, observed frame [d]")
+        ax.set_ylabel("chance to be\nlikelier")
+        ax.legend(loc="upper left", bbox_to_anchor=(1.0, 1.0))
+    return figure
+
+
+def recovery_figure(curves: Curves, found: OwnRecovery) -> Figure:
+    """Draw an observer's own light curves and what each method makes of them."""
+    start = float(min(curves.t_continuum.min(), curves.t_line.min()))
+    with styled():
+        figure = new_figure(9.0, 3.6)
+        grid = GridSpec(2, 3, figure=figure)
+        top = figure.add_subplot(grid[0, :2])
+        low = figure.add_subplot(grid[1, :2], sharex=top)
+        for ax, t, f, e, colour, mark, name in (
+            (top, *curves.columns()[:3], BLUE, "o", "continuum"),
+            (low, *curves.columns()[3:], VERMILION, "s", "line"),
+        ):
+            ax.errorbar(t - start, f, yerr=e, fmt=mark, ms=3, color=colour, ecolor=GREY, lw=0.7)
+            ax.set_ylabel(f"{name} flux")
+        top.tick_params(labelbottom=False)
+        low.set_xlabel(f"days since {start:.1f}")
+        correlation = figure.add_subplot(grid[0, 2])
+        likely = figure.add_subplot(grid[1, 2], sharex=correlation)
+        result, posterior = found.correlation, found.likelihood
+        correlation.plot(result.lags_d, result.r, color=INK, lw=1)
+        correlation.set_ylabel("correlation r")
+        correlation.tick_params(labelbottom=False)
+        likely.set_xlabel("lag, observed frame [d]")
+        likely.set_ylabel("over the peak")
+        if result.centroids_d.size:
+            counts, edges = np.histogram(result.centroids_d, bins=80)
+            likely.stairs(counts / counts.max(), edges, fill=True, color=GREY, label="resampled")
+        if posterior.density.size:
+            shape = posterior.density / posterior.density.max()
+            likely.plot(posterior.lags_d, shape, color=BLUE, lw=1.2, label="likelihood")
+        likely.set_ylim(0, 1.6)
+        likely.legend(loc="upper right", fontsize=7)
     return figure
 
 

@@ -60,6 +60,8 @@ def _card(
         "epochs": [row for row in epochs if row["target"] == name],
         "grid": images.get(f"success {name}"),
         "example": images.get(f"example {name}"),
+        "ambiguity": images.get(f"ambiguity {name}"),
+        "opinions": [o for o in plan.opinions if o.target == name],
     }
 
 

@@ -8,7 +8,10 @@ layout of a target. Finished work is kept in a store, so that an interrupted run
 from planner.scoring.depth import Depth, depth_of
 from planner.scoring.draws import Setting, setting_of, sky_of_trial
 from planner.scoring.example import Example, example_of
+from planner.scoring.forecasting import LayoutForecast, ambiguity_of, forecast_layouts
 from planner.scoring.intervals import wilson
+from planner.scoring.opinions import opinions_of
+from planner.scoring.own import OwnRecovery, recover_own
 from planner.scoring.placing import Placing, place, place_in
 from planner.scoring.prospects import prospect_of
 from planner.scoring.recovering import REASONS, Curves
@@ -23,17 +26,23 @@ __all__ = [
     "Depth",
     "Example",
     "Job",
+    "LayoutForecast",
+    "OwnRecovery",
     "Placing",
     "Progress",
     "Setting",
     "Store",
     "Used",
+    "ambiguity_of",
     "depth_of",
     "example_of",
+    "forecast_layouts",
     "key_of",
+    "opinions_of",
     "place",
     "place_in",
     "prospect_of",
+    "recover_own",
     "score_targets",
     "scores_of",
     "setting_of",

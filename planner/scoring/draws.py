@@ -10,13 +10,29 @@ import numpy as np
 from numpy.typing import NDArray
 
 from planner.base.seeds import stream
-from planner.lightcurves import continuum_flux, draw_pair, line_flux
+from planner.lightcurves import (
+    continuum_flux,
+    disturbed_noise,
+    draw_disturbed_pair,
+    draw_pair,
+    line_flux,
+)
 from planner.model.campaign import Campaign, Simulation, SuccessRule
+from planner.model.disturbance import DISTURBANCES
 from planner.model.observatory import WeatherClimate
 from planner.model.trial import FeedNights, Prospect
 from planner.weather import clear_nights
 
-__all__ = ["UNRELATED", "Draw", "Measured", "Setting", "draw_trial", "setting_of", "sky_of_trial"]
+__all__ = [
+    "UNRELATED",
+    "Draw",
+    "Measured",
+    "Setting",
+    "draw_trial",
+    "setting_of",
+    "sky_of_trial",
+    "truth_of",
+]
 
 Floats = NDArray[np.float64]
 
@@ -39,6 +55,8 @@ class Setting:
     """Name, site and share of nights lost to other things than weather."""
     simulation: Simulation
     success: SuccessRule
+    disturbance: str = "none"
+    """Key of `planner.model.disturbance.DISTURBANCES`."""
     unrelated: bool = False
     """The line varies like the continuum but knows nothing of it: what is claimed is false."""
 
@@ -77,26 +95,52 @@ class Draw:
     """Lines that vary in the same way and know nothing of the continuum."""
 
 
+class Truth(NamedTuple):
+    """What one trial's AGN does, observed frame."""
+
+    lag_d: float
+    amplitude_mag: float
+    timescale_d: float
+    width_d: float
+    """Full width of the top-hat response."""
+
+
+def truth_of(setting: Setting, prospect: Prospect, trial: int) -> Truth:
+    """Draw a trial's lag, amplitude and timescale about the forecast, and the response's width."""
+    forecast = prospect.forecast
+    name = forecast.name
+    lag_z, amplitude_z, timescale_z = stream(setting.seed, "truth", name, trial).standard_normal(3)
+    lag = forecast.lag_obs_d * 10 ** (forecast.lag_scatter_dex * lag_z)
+    share = stream(setting.seed, "response", name, trial).uniform(
+        *setting.simulation.response_width
+    )
+    return Truth(
+        lag_d=lag,
+        amplitude_mag=forecast.amplitude_mag * 10 ** (forecast.amplitude_scatter_dex * amplitude_z),
+        timescale_d=forecast.timescale_obs_d * 10 ** (forecast.timescale_scatter_dex * timescale_z),
+        width_d=lag * share,
+    )
+
+
 def draw_trial(setting: Setting, prospect: Prospect, trial: int) -> Draw:
     """Draw everything random of one trial of one target, except the resampling of its errors.
 
     Lag, amplitude and timescale are log-normal about the forecast; the top-hat response's width
     is a uniform share of the lag. Each night on offer has its own flux and noise, whatever layout
     uses it. The scale error of a spectrum is one number for all that is measured in it. Telescopes
-    that join a stream have scales and zero points of their own.
+    that join a stream have scales and zero points of their own. Noise disturbances act on the part
+    of the errors that is not shared.
     """
     forecast, simulation = prospect.forecast, setting.simulation
     name = forecast.name
-    lag_z, amplitude_z, timescale_z = stream(setting.seed, "truth", name, trial).standard_normal(3)
-    lag = forecast.lag_obs_d * 10 ** (forecast.lag_scatter_dex * lag_z)
-    amplitude = forecast.amplitude_mag * 10 ** (forecast.amplitude_scatter_dex * amplitude_z)
-    timescale = forecast.timescale_obs_d * 10 ** (forecast.timescale_scatter_dex * timescale_z)
-    width = lag * stream(setting.seed, "response", name, trial).uniform(*simulation.response_width)
+    lag, amplitude, timescale, width = truth_of(setting, prospect, trial)
     times = (
         _all(n.best_mjd for n in prospect.continuum) - setting.first_night,
         _all(n.best_mjd for n in prospect.line) - setting.first_night,
     )
-    x, y = draw_pair(stream(setting.seed, "driver", name, trial), *times, timescale, lag, width)
+    disturbance = DISTURBANCES[setting.disturbance]
+    driver = stream(setting.seed, "driver", name, trial)
+    x, y = draw_disturbed_pair(driver, *times, timescale, lag, width, disturbance)
     scale = _by_feed(
         prospect.line,
         stream(setting.seed, "scale", name, trial).standard_normal(y.size),
@@ -148,6 +192,7 @@ def _measured(
 ) -> tuple[Measured, ...]:
     """Return what each telescope of a stream measures on each of its nights."""
     noise = stream(setting.seed, f"noise {kind}", name, trial).standard_normal(truth.size)
+    otherwise = stream(setting.seed, f"disturbed noise {kind}", name, trial)
     joining = stream(setting.seed, f"joining {kind}", name, trial).standard_normal((len(feeds), 2))
     parts = []
     for i, (feed, flux, z) in enumerate(
@@ -155,10 +200,9 @@ def _measured(
     ):
         own = np.sqrt(np.maximum(feed.flux_error**2 - feed.scale_error**2, 0.0))
         shared = _shared_error(feed, i, scale)
+        own *= disturbed_noise(otherwise, feed.best_mjd, z, DISTURBANCES[setting.disturbance])
         gain, zero = (1.0, 0.0) if i == 0 else (1.0, 0.0) + UNLIKE * np.tanh(joining[i])
-        parts.append(
-            Measured(gain * (flux * (1.0 + shared) + own * z) + zero, gain * feed.flux_error)
-        )
+        parts.append(Measured(gain * (flux * (1.0 + shared) + own) + zero, gain * feed.flux_error))
     return tuple(parts)
 
 

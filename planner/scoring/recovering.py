@@ -36,6 +36,7 @@ __all__ = [
     "judge",
     "peaks_of_strangers",
     "recover",
+    "search_of",
 ]
 
 Floats = NDArray[np.float64]
@@ -96,6 +97,8 @@ class Found(NamedTuple):
     r_max: float
     """Infinite for a method without correlation."""
     in_peak: float
+    log_odds: float = np.inf
+    """Likelihood: ln of the odds of an echo against an unrelated line."""
     agrees: bool = True
     """False: the 68 % interval of the other method does not overlap this one's."""
 
@@ -134,10 +137,11 @@ def _of_result(result: LagResult) -> Found:
 
 def _of_posterior(result: LagPosterior) -> Found:
     lag, lo, hi = result.lag_d, result.lag_lo_d, result.lag_hi_d
-    return Found(lag, lo, hi, np.inf, result.primary_share)
+    return Found(lag, lo, hi, np.inf, result.primary_share, result.log_odds)
 
 
-def _search(prospect: Prospect, span_d: float) -> tuple[float, float]:
+def search_of(prospect: Prospect, span_d: float) -> tuple[float, float]:
+    """Return the lowest and highest lag to look for in a campaign of that span, in days."""
     forecast = prospect.forecast
     longest = forecast.lag_obs_d * 10 ** (SEARCH_SIGMAS * forecast.lag_scatter_dex)
     return search_range(span_d, longest, forecast.timescale_obs_d)
@@ -150,7 +154,7 @@ def by_correlation(
     sampling = float(np.median(np.diff(curves.t_continuum)))
     return recover_lag(
         *curves.columns(),
-        lag_grid(*_search(prospect, span_d), sampling),
+        lag_grid(*search_of(prospect, span_d), sampling),
         setting.simulation.resamples,
         stream(setting.seed, "resampling", prospect.forecast.name, label, trial),
         r_max_above=setting.success.r_max_above,
@@ -169,7 +173,7 @@ def peaks_of_strangers(
         Fluxes at the line's epochs.
     """
     sampling = float(np.median(np.diff(curves.t_continuum)))
-    lags = lag_grid(*_search(prospect, span_d), sampling)
+    lags = lag_grid(*search_of(prospect, span_d), sampling)
     return [
         peak_correlation(*curves.columns()[:4], flux, curves.e_line, lags, detrend=detrend)
         for flux in strangers
@@ -186,7 +190,7 @@ def by_likelihood(prospect: Prospect, curves: Curves, span_d: float) -> LagPoste
     belief = Belief(
         tau_d=forecast.timescale_obs_d, tau_dex=max(forecast.timescale_scatter_dex, 0.1)
     )
-    return lag_posterior(*curves.columns(), *_search(prospect, span_d), belief)
+    return lag_posterior(*curves.columns(), *search_of(prospect, span_d), belief)
 
 
 def _passes(found: Found, rule: SuccessRule) -> bool:
@@ -202,6 +206,8 @@ def judge(found: Found | None, lag_true_d: float, rule: SuccessRule) -> tuple[bo
     if not np.isfinite(found.lag_d):
         return False, False, 3
     if _passes(found, rule):
+        if found.log_odds <= -np.log(rule.false_alarm_below):
+            return False, False, CHANCE
         if not found.agrees:
             return False, False, 9
         right = bool(is_right(found.lag_d, lag_true_d, rule.within))

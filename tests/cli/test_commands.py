@@ -1,14 +1,11 @@
 """Whole commands: what they print, what they write, how they end."""
 
-import errno
 import json
 import os
-import shutil
 import signal
 import subprocess
 import sys
 import time
-from pathlib import Path
 
 import numpy as np
 import pandas as pd
@@ -21,7 +18,7 @@ FILE = """
 campaign: {name: Small, first_night: 2027-03-01, last_night: 2027-08-31, seed: 7}
 targets:
   - {name: One, ra: "11:42:10", dec: "-32:15:00", redshift: 0.02,
-     magnitude: {band: V, value: 14.9}, variability: {amplitude: 0.25 mag, timescale: 40 d}}
+     magnitude: {band: V, value: 14.9}, variability: {amplitude: 0.4 mag, timescale: 40 d}}
   - {name: "=Two", ra: "12:10:00", dec: "-20:00:00", redshift: 0.03,
      magnitude: {band: V, value: 15.5}}
   - {name: North, ra: "12:10:00", dec: "+80:00:00", redshift: 0.03,
@@ -324,102 +321,3 @@ def test_score_and_schedule_print_tables(file, capsys):
     assert "120 d" in capsys.readouterr().out
     assert main(["schedule", str(file), "--quiet", "--workers", "1"]) == 0
     assert "A plan is no permission" in capsys.readouterr().out
-
-
-BAD_CALLS = {
-    "no such file": (["check", "nowhere.yaml"], "nowhere.yaml: no such file"),
-    "no such command": (["plam", "small.yaml"], "invalid choice: 'plam'"),
-    "no file": (["plan"], "the following arguments are required: FILE"),
-    "workers": (["plan", "small.yaml", "--workers", "0"], "found '0'; expected a whole number"),
-    "seed": (["plan", "small.yaml", "--seed", "-3"], "expected"),
-    "unknown option": (["plan", "small.yaml", "--fast"], "unrecognized arguments: --fast"),
-    "one scenario": (["compare", "small.yaml"], "expected two or more campaign files"),
-    "not our folder": (["lags", "small.yaml", "--out", "taken"], "not a plan (e.g. thesis.tex)"),
-    "a file as folder": (["lags", "small.yaml", "--out", "small.yaml"], "cannot be used"),
-    "typo in the file": (["plan", "typo.yaml"], "did you mean `cadence`?"),
-    "curve without columns": (["recover", "curve.csv", "curve.csv"], "no column flux, flux_error"),
-    "curve with text": (["recover", "text.csv", "text.csv"], "text.csv:3: flux: found bright"),
-}
-
-
-@pytest.mark.parametrize("case", BAD_CALLS)
-def test_bad_calls_end_with_one_message_and_status_2(file, tmp_path, monkeypatch, capsys, case):
-    words, message = BAD_CALLS[case]
-    (tmp_path / "typo.yaml").write_text(FILE.replace("cadence: 1", "cadance: 1"))
-    (tmp_path / "taken").mkdir()
-    (tmp_path / "taken" / "thesis.tex").write_text("")
-    (tmp_path / "curve.csv").write_text("time\n1\n")
-    (tmp_path / "text.csv").write_text("time,flux,flux_error\n1,2,0.1\n2,bright,0.1\n")
-    before = contents(tmp_path)
-    monkeypatch.chdir(tmp_path)
-    try:
-        status = main(words)
-    except SystemExit as end:
-        status = end.code
-    printed = capsys.readouterr()
-    assert status == 2
-    assert message in printed.err
-    assert "Traceback" not in printed.err
-    assert printed.out == ""
-    assert contents(tmp_path) == before
-
-
-def test_an_earlier_plan_is_not_overwritten_by_another(file, tmp_path, capsys):
-    out = str(tmp_path / "out")
-    assert main(["lags", str(file), "--out", out]) == 0
-    kept = contents(Path(out))
-    file.write_text(FILE.replace("14.9", "15.9"))
-    assert main(["lags", str(file), "--out", out]) == 2
-    assert "--replace" in capsys.readouterr().err
-    assert contents(Path(out)) == kept
-    assert main(["lags", str(file), "--out", out, "--replace"]) == 0
-    assert contents(Path(out)) != kept
-
-
-def test_nothing_observable_is_status_1_with_advice(file, capsys, tmp_path):
-    north = FILE.replace('"-32:15:00"', '"+85:00:00"').replace('"-20:00:00"', '"+85:00:00"')
-    file.write_text(north)
-    assert main(["plan", str(file), "--out", str(tmp_path / "out"), "--quiet"]) == 1
-    assert "widen the limits" in capsys.readouterr().err
-    assert contents(tmp_path / "out") == {}
-
-
-@pytest.mark.parametrize("command", ["lags", "nights"])
-def test_a_full_disk_is_one_message_and_leaves_nothing_half_written(
-    file, tmp_path, monkeypatch, capsys, command
-):
-    out = tmp_path / "out"
-
-    def full(_):
-        raise OSError(errno.ENOSPC, os.strerror(errno.ENOSPC))
-
-    assert main(["lags", str(file), "--out", str(out)]) == 0
-    kept = contents(out)
-    shutil.rmtree(out)
-    monkeypatch.setattr("os.fsync", full)
-    assert main([command, str(file), "--out", str(out)]) == 2
-    printed = capsys.readouterr()
-    assert "cannot be written: No space left on device" in printed.err
-    assert printed.err.count("\n") == 1
-    assert [p.name for p in out.iterdir()] == []
-    monkeypatch.undo()
-    assert main(["lags", str(file), "--out", str(out)]) == 0
-    assert contents(out) == kept
-
-
-def test_a_full_disk_on_stdout_is_no_traceback(file):
-    with Path("/dev/full").open("w") as full:
-        done = subprocess.run(
-            [sys.executable, "-m", "planner", "lags", str(file)],
-            stdout=full, stderr=subprocess.PIPE, text=True, check=False,
-        )  # fmt: skip
-    assert "Traceback" not in done.stderr
-    assert done.returncode == 2
-
-
-def test_a_closed_pipe_is_no_traceback(file):
-    done = subprocess.run(
-        f"{sys.executable} -m planner check {file} | head -n 1",
-        shell=True, capture_output=True, text=True, check=False,
-    )  # fmt: skip
-    assert "Traceback" not in done.stderr

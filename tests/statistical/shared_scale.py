@@ -11,7 +11,8 @@ import numpy as np
 from planner.model.campaign import Layout
 from planner.scoring import place_in
 from planner.scoring.draws import draw_trial
-from planner.scoring.trials import nights_used, observe, recover
+from planner.scoring.recovering import by_correlation
+from planner.scoring.trials import nights_used, observe
 
 SCALE_ERROR = 0.05
 TRIALS = 60
@@ -44,7 +45,7 @@ def peaks(setting, prospect, source, trials=TRIALS):
     for trial in range(trials):
         draw = draw_trial(setting, case, trial)
         curves = observe(case, draw, nights_used(case, LAYOUT, placing, draw.usable))
-        result = recover(setting, case, curves, span, "figure", trial)
+        result = by_correlation(setting, case, curves, span, "figure", trial)
         found.append((result.peak_d, draw.lag_obs_d))
     return np.array(found).T
 

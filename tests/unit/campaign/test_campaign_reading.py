@@ -82,8 +82,10 @@ limits: {airmass: 1.8, twilight: Nautical, moon_separation: 45 deg}
 season_lengths: [180 d, 90 d]
 seasons: 3
 time: {nights: 200, hours_per_night: 6.5}
-success: {goal: 90 %, within: 20 %, error_below: 25 %, r_max_above: 0.6, sigma_above: 2}
-simulation: {trials: 40, resamples: 60, responsivity: 1.1, response_width: [20 %, 200 %]}
+success: {goal: 90 %, within: 20 %, error_below: 25 %, r_max_above: 0.6, sigma_above: 2,
+          cuts: strict, in_peak_above: 60 %, false_alarm_below: 3 %, robust_to: slow trend}
+simulation: {trials: 40, resamples: 60, responsivity: 1.1, response_width: [20 %, 200 %],
+             method: likelihood, detrend: yes}
 cosmology: {hubble: 67.7 km/s/Mpc, omega_matter: 0.31}
 relations: {Hbeta: second}
 """
@@ -149,6 +151,9 @@ def test_everything_given_arrives_in_the_record(tmp_path):
     rule, draw = campaign.success, campaign.simulation
     assert (rule.goal, rule.within, rule.error_below) == (0.9, 0.2, 0.25)
     assert (rule.r_max_above, rule.sigma_above) == (0.6, 2.0)
+    assert (rule.in_peak_above, rule.false_alarm_below, rule.agree) == (0.6, 0.03, True)
+    assert rule.robust_to == ("slow trend",)
+    assert (draw.method, draw.detrend) == ("likelihood", True)
     assert (draw.trials, draw.resamples, draw.responsivity) == (40, 60, 1.1)
     assert draw.response_width == (0.2, 2.0)
     assert campaign.cosmology.hubble_km_s_mpc == pytest.approx(67.7)
@@ -226,7 +231,7 @@ def test_nothing_is_called_a_default_that_was_given(tmp_path):
         "sites.Low Fell.weather.bad_spell", "sites.Low Fell.seeing", "sites.Low Fell.dark_sky",
         "sites.Low Fell.extinction", "streams.line.floor", "streams.line.exposures",
         "streams.line.read_out", "streams.line.standards", "streams.line.moon",
-        "streams.continuum.also[1].longest_exposure", "relations.MgII",
+        "streams.continuum.also[1].longest_exposure", "relations.MgII", "success.agree",
         *(f"telescopes.{name}.{key}" for name in ("F04", "F05")
           for key in ("slew", "acquisition", "obstruction", "technical_loss")),
     }  # fmt: skip

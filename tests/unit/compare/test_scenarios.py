@@ -22,6 +22,7 @@ def scenario(name, success, claim=None, decision="observe"):
         nan,
         nan,
         nan,
+        nan,
         count,
         count,
         nan,

@@ -118,7 +118,7 @@ def expected_covariance(of_driver, with_line, of_line):
     return expected
 
 
-@pytest.mark.parametrize("tau", [15.0, TAU])
+@pytest.mark.parametrize("tau", [pytest.param(15.0, marks=pytest.mark.slow), TAU])
 def test_skewed_response_has_the_covariance_of_its_definition(tau):
     """Gamma density of shape 2 and scale lag / 2; the walk at the continuum's epochs is exact."""
     scale = LAG / 2

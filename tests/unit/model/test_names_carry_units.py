@@ -24,7 +24,7 @@ PURE = {
     "epochs_line", "epochs_continuum", "claims", "false_claims", "false_claims_lo",
     "false_claims_hi", "throughput", "obstruction", "technical_loss", "read_share", "wanted_error",
     "moon_illumination_max", "scale_error", "hours_shutter", "hours_per_night", "whole_nights",
-    "least_hours_per_night",
+    "least_hours_per_night", "in_peak_above", "false_alarm_below", "r_unrelated",
 }  # fmt: skip
 RECORDS = [
     record

@@ -4,10 +4,10 @@ import numpy as np
 import pytest
 
 from planner.model.campaign import Layout
-from planner.recovery import LagResult
 from planner.scoring import REASONS, Job, Store, score_targets, scores_of, setting_of
 from planner.scoring.draws import draw_trial, sky_of_trial
-from planner.scoring.trials import judge, nights_used, run_trials
+from planner.scoring.recovering import Found, judge
+from planner.scoring.trials import nights_used, run_trials
 
 LAYOUTS = (Layout(3, 1, 120, 1), Layout(6, 1, 60, 1))
 
@@ -24,11 +24,9 @@ def run(jobs, **options):
 
 def result(**values):
     values = {
-        "lag_d": 10.0, "lag_lo_d": 9.0, "lag_hi_d": 11.0, "centroid_d": 10.0, "r_max": 0.9,
-        "peak_d": 10.0, "share": 1.0, "in_peak": 1.0, "aliases": (), "reason": "", "lags_d": np.zeros(1), "r": np.zeros(1),
-        "centroids_d": np.zeros(1),
+        "lag_d": 10.0, "lag_lo_d": 9.0, "lag_hi_d": 11.0, "r_max": 0.9, "in_peak": 1.0,
     } | values  # fmt: skip
-    return LagResult(**values)
+    return Found(**values)
 
 
 @pytest.mark.parametrize(
@@ -43,12 +41,17 @@ def result(**values):
         (result(r_max=0.4), 10.0, False, False, "weak correlation"),
         (result(lag_lo_d=2.0, lag_hi_d=18.0), 10.0, False, False, "error too large"),
         (result(lag_lo_d=-1.0, lag_hi_d=10.5), 10.0, False, False, "consistent with zero lag"),
+        (result(in_peak=0.4), 10.0, False, False, "several peaks"),
+        (result(agrees=False), 10.0, False, False, "methods disagree"),
+        (result(log_odds=2.9), 10.0, False, False, "could be chance"),
+        (result(log_odds=3.1), 10.0, True, True, ""),
         (result(lag_d=-5.0, lag_lo_d=-6.0, lag_hi_d=-4.0), 10.0, False, False,
          "consistent with zero lag"),
     ],
 )  # fmt: skip
 def test_claims_and_successes_are_kept_apart(campaign, found, truth, claim, success, reason):
-    verdict = judge(found, truth, campaign.success)
+    rule = replace(campaign.success, in_peak_above=0.5, false_alarm_below=0.05)
+    verdict = judge(found, truth, rule)
     assert verdict == (claim, success, REASONS.index(reason))
 
 

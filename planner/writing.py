@@ -1,0 +1,73 @@
+"""A finished plan written into its folder: tables, figures, report, provenance."""
+
+from __future__ import annotations
+
+import re
+from pathlib import Path
+
+from planner import export, report
+from planner.base.files import write_bytes
+from planner.campaign import Reading
+from planner.model.plan import Plan
+from planner.scoring import ambiguity_of, example_of, setting_of
+
+__all__ = ["write_plan"]
+
+
+def write_plan(plan: Plan, reading: Reading, folder: Path) -> None:
+    """Write everything a plan holds into a folder that is ours. Raises `OutputError`."""
+    names = [t.name for t in plan.campaign.targets]
+    schedule = export.schedule_table(plan.campaign, plan.visits)
+    tables = {
+        "lags": export.lags_table(plan.forecasts),
+        "windows": export.windows_table(names, plan.skies),
+        "seasons": export.seasons_table(plan.campaign, plan.prospects),
+        "scores": export.scores_table(plan.scores),
+        "recommendation": export.recommendation_table(plan),
+        "schedule": schedule,
+        "epochs": export.epochs_table(plan.prospects),
+        "time": export.time_table(plan.time_spent),
+        "opinions": export.opinions_table(plan.opinions),
+    }
+    for name, table in tables.items():
+        export.write_ecsv(table, folder / f"{name}.ecsv")
+    export.write_csv(schedule, folder / "schedule.csv")
+    figures = draw_figures(plan)
+    (folder / "figures").mkdir(exist_ok=True)
+    for name, image in figures.items():
+        write_bytes(folder / "figures" / f"{file_name(name)}.png", image)
+    defaults = [(d.key, d.value, d.reason) for d in reading.defaults]
+    write_bytes(
+        folder / "report.html",
+        report.page(plan, figures, export.as_rows(tables["epochs"]), defaults),
+    )
+    export.run_json(plan.run, folder / "run.json")
+
+
+def draw_figures(plan: Plan) -> dict[str, bytes]:
+    """Return every figure of a plan as PNG, by what it shows."""
+    setting = setting_of(plan.campaign)
+    figures = {
+        f"visibility {site}": report.png(report.visibility_figure(plan.campaign, sky))
+        for site, sky in plan.skies.items()
+    }
+    for prospect, table, advice in zip(
+        plan.prospects, plan.trials, plan.recommendations, strict=True
+    ):
+        if advice.score is None:
+            continue
+        scores = [s for s in plan.scores if s.target == advice.target]
+        grid = report.success_figure(scores, advice.score, plan.campaign.success.goal)
+        figures[f"success {advice.target}"] = report.png(grid)
+        example = example_of(setting, prospect, advice.score.layout, table)
+        figures[f"example {advice.target}"] = report.png(report.example_figure(example))
+        curve = ambiguity_of(setting, prospect, advice.score.layout)
+        figures[f"ambiguity {advice.target}"] = report.png(
+            report.ambiguity_figure(curve, prospect.forecast.lag_obs_d)
+        )
+    return figures
+
+
+def file_name(title: str) -> str:
+    """Return a title as a file name that any system takes."""
+    return re.sub(r"[^A-Za-z0-9+.-]+", "-", title).strip("-")
