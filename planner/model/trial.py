@@ -75,8 +75,6 @@ class TrialTable:
     lag_lo_d: NDArray[np.float64]
     lag_hi_d: NDArray[np.float64]
     r_max: NDArray[np.float64]
-    r_unrelated: NDArray[np.float64]
-    """Peak correlations of unrelated lines on the same epochs, (layouts, trials, lines)."""
     epochs_line: NDArray[np.int64]
     epochs_continuum: NDArray[np.int64]
     hours: NDArray[np.float64]

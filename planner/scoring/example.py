@@ -12,11 +12,11 @@ from planner.recovery import LagPosterior, LagResult
 from planner.scoring.draws import Setting, draw_trial
 from planner.scoring.placing import place_in
 from planner.scoring.recovering import (
-    FEWEST_EPOCHS,
     REASONS,
     Curves,
     by_correlation,
     by_likelihood,
+    enough,
 )
 from planner.scoring.trials import nights_used, observe
 
@@ -49,7 +49,7 @@ def example_of(setting: Setting, prospect: Prospect, layout: Layout, table: Tria
     curves = observe(prospect, draw, nights_used(prospect, layout, placing, draw.usable))
     span = float(placing.last[-1] - placing.first[0])
     result = posterior = None
-    if min(curves.t_continuum.size, curves.t_line.size) >= FEWEST_EPOCHS:
+    if enough(curves):
         result = by_correlation(setting, prospect, curves, span, str(layout), trial)
         posterior = by_likelihood(prospect, curves, span)
     verdict = REASONS[commonest] or "success"

@@ -33,6 +33,7 @@ __all__ = [
     "Found",
     "by_correlation",
     "by_likelihood",
+    "enough",
     "judge",
     "peaks_of_strangers",
     "recover",
@@ -104,7 +105,13 @@ class Found(NamedTuple):
 
 
 def recover(
-    setting: Setting, prospect: Prospect, curves: Curves, span_d: float, label: str, trial: int
+    setting: Setting,
+    prospect: Prospect,
+    curves: Curves,
+    span_d: float,
+    label: str,
+    trial: int,
+    limit: float,
 ) -> Found | None:
     """Recover the lag of one trial; None where there are too few epochs to look for one.
 
@@ -114,13 +121,15 @@ def recover(
         First planned night to last; with the lag's prior it sets the search range.
     label : str
         Names the way of observing in the random stream of the resampling.
+    limit : float
+        Correlation that a claim must exceed besides what the rule asks.
     """
-    if min(curves.t_continuum.size, curves.t_line.size) < FEWEST_EPOCHS:
+    if not enough(curves):
         return None
     if setting.simulation.method == "likelihood":
         found = _of_posterior(by_likelihood(prospect, curves, span_d))
     else:
-        found = _of_result(by_correlation(setting, prospect, curves, span_d, label, trial))
+        found = _of_result(by_correlation(setting, prospect, curves, span_d, label, trial, limit))
     if setting.success.agree and _passes(found, setting.success):
         if setting.simulation.method == "likelihood":
             other = _of_result(by_correlation(setting, prospect, curves, span_d, label, trial))
@@ -129,6 +138,11 @@ def recover(
         overlap = other.lag_lo_d <= found.lag_hi_d and found.lag_lo_d <= other.lag_hi_d
         found = found._replace(agrees=bool(overlap))
     return found
+
+
+def enough(curves: Curves) -> bool:
+    """Say whether there are epochs enough to look for a lag."""
+    return min(curves.t_continuum.size, curves.t_line.size) >= FEWEST_EPOCHS
 
 
 def _of_result(result: LagResult) -> Found:
@@ -148,7 +162,13 @@ def search_of(prospect: Prospect, span_d: float) -> tuple[float, float]:
 
 
 def by_correlation(
-    setting: Setting, prospect: Prospect, curves: Curves, span_d: float, label: str, trial: int
+    setting: Setting,
+    prospect: Prospect,
+    curves: Curves,
+    span_d: float,
+    label: str,
+    trial: int,
+    limit: float = -np.inf,
 ) -> LagResult:
     """Recover the lag by interpolated cross-correlation; arguments as for `recover`."""
     sampling = float(np.median(np.diff(curves.t_continuum)))
@@ -157,7 +177,7 @@ def by_correlation(
         lag_grid(*search_of(prospect, span_d), sampling),
         setting.simulation.resamples,
         stream(setting.seed, "resampling", prospect.forecast.name, label, trial),
-        r_max_above=setting.success.r_max_above,
+        r_max_above=max(setting.success.r_max_above, limit),
         detrend=setting.simulation.detrend,
     )
 
@@ -197,12 +217,19 @@ def _passes(found: Found, rule: SuccessRule) -> bool:
     return bool(passes_cuts(*found[:5], rule))
 
 
-def judge(found: Found | None, lag_true_d: float, rule: SuccessRule) -> tuple[bool, bool, int]:
-    """Return whether a lag is a claim, whether it is a success, and the reason's index."""
+def judge(
+    found: Found | None, lag_true_d: float, rule: SuccessRule, limit: float = -np.inf
+) -> tuple[bool, bool, int]:
+    """Return whether a lag is a claim, whether it is a success, and the reason's index.
+
+    `limit` is a correlation that a claim must exceed besides what the rule asks.
+    """
     if found is None:
         return False, False, 2
     if found.r_max <= rule.r_max_above:
         return False, False, 4
+    if found.r_max <= limit:
+        return False, False, CHANCE
     if not np.isfinite(found.lag_d):
         return False, False, 3
     if _passes(found, rule):

@@ -3,7 +3,8 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
+from itertools import islice
 from typing import Any
 
 import numpy as np
@@ -13,14 +14,12 @@ from planner.base.workers import each
 from planner.model.campaign import Layout
 from planner.model.trial import Prospect, TrialTable
 from planner.scoring.draws import Setting
-from planner.scoring.executed import run_executed
-from planner.scoring.recovering import CHANCE
 from planner.scoring.store import Store, key_of
-from planner.scoring.trials import Used, run_trials
+from planner.scoring.trials import Task, Used, run_strangers, run_trials
 
 __all__ = ["MODEL_VERSION", "Job", "Progress", "Used", "score_targets"]
 
-MODEL_VERSION = 3
+MODEL_VERSION = 4
 """Raised whenever the same inputs would give other outcomes; older kept results are then stale."""
 
 CHUNK = 10
@@ -44,16 +43,6 @@ class Job:
     there is one layout."""
 
 
-@dataclass(frozen=True, slots=True)
-class _Task:
-    setting: Setting
-    prospect: Prospect
-    layouts: tuple[Layout, ...]
-    used: tuple[Used, ...] | None
-    first: int
-    last: int
-
-
 def score_targets(
     jobs: Sequence[Job], *, workers: int, store: Store, progress: Progress, label: str
 ) -> list[TrialTable]:
@@ -75,33 +64,70 @@ def score_targets(
     list of TrialTable
         In the order of `jobs`.
     """
-    tasks: list[_Task] = []
-    of_job: list[slice] = []
-    for job in jobs:
-        start = len(tasks)
-        for first, last in _chunks(job.setting.simulation.trials):
-            used = None if job.used is None else job.used[first:last]
-            tasks.append(_Task(job.setting, job.prospect, job.layouts, used, first, last))
-        of_job.append(slice(start, len(tasks)))
-    done = _all_done(tasks, workers, store, progress, label)
-    return [_table(job, done[rows]) for job, rows in zip(jobs, of_job, strict=True)]
+    limits = _limits(jobs, workers, store, progress)
+    tasks = [
+        replace(task, limits=limit)
+        for job, limit in zip(jobs, limits, strict=True)
+        for task in _tasks(job)
+    ]
+    done = iter(_all_done(run_trials, tasks, workers, store, progress, label))
+    return [_table(job, list(islice(done, len(_tasks(job))))) for job in jobs]
 
 
-def _chunks(trials: int) -> list[tuple[int, int]]:
-    return [(first, min(first + CHUNK, trials)) for first in range(0, trials, CHUNK)]
+def _tasks(job: Job) -> list[Task]:
+    """Cut a job's trials into tasks."""
+    trials = job.setting.simulation.trials
+    ends = [(first, min(first + CHUNK, trials)) for first in range(0, trials, CHUNK)]
+    return [
+        Task(
+            job.setting,
+            job.prospect,
+            job.layouts,
+            None if job.used is None else job.used[first:last],
+            first,
+            last,
+        )
+        for first, last in ends
+    ]
 
 
-def _work(task: _Task) -> Arrays:
-    if task.used is None:
-        return run_trials(task.setting, task.prospect, task.layouts, task.first, task.last)
-    return run_executed(task.setting, task.prospect, task.layouts[0], task.used, task.first)
+def _limits(
+    jobs: Sequence[Job], workers: int, store: Store, progress: Progress
+) -> list[tuple[float, ...] | None]:
+    """Return, for each layout of each job, the correlation that unrelated lines seldom exceed.
+
+    None for jobs whose rule does not ask for it, or whose method has odds of its own.
+    """
+    asked = [
+        job
+        for job in jobs
+        if job.setting.success.false_alarm_below < 1.0
+        and job.setting.simulation.method == "correlation"
+    ]
+    tasks = [task for job in asked for task in _tasks(job)]
+    done = iter(_all_done(run_strangers, tasks, workers, store, progress, "unrelated lines"))
+    limits = {}
+    for job in asked:
+        parts = [part["r_unrelated"] for part in islice(done, len(_tasks(job)))]
+        reached = np.nan_to_num(np.concatenate(parts, axis=1), nan=-1.0)
+        share = 1.0 - job.setting.success.false_alarm_below
+        limit = np.quantile(reached.reshape(len(reached), -1), share, axis=1)
+        limits[id(job)] = tuple(float(r) for r in limit)
+    return [limits.get(id(job)) for job in jobs]
 
 
 def _all_done(
-    tasks: list[_Task], workers: int, store: Store, progress: Progress, label: str
+    work: Callable[[Task], Arrays],
+    tasks: Sequence[Task],
+    workers: int,
+    store: Store,
+    progress: Progress,
+    label: str,
 ) -> list[Arrays]:
     """Return each task's arrays, from the store where they are there."""
-    keys = [key_of(MODEL_VERSION, task) for task in tasks]
+    if not tasks:
+        return []
+    keys = [key_of(MODEL_VERSION, work.__name__, task) for task in tasks]
     done: dict[int, Arrays] = {}
     for i, key in enumerate(keys):
         kept = store.get(key)
@@ -109,30 +135,16 @@ def _all_done(
             done[i] = kept
     missing = [i for i in range(len(tasks)) if i not in done]
     progress(label, len(done), len(tasks))
-    for i, arrays in each(_work, [tasks[i] for i in missing], workers):
+    for i, arrays in each(work, [tasks[i] for i in missing], workers):
         store.put(keys[missing[i]], arrays)
         done[missing[i]] = arrays
         progress(label, len(done), len(tasks))
     return [done[i] for i in range(len(tasks))]
 
 
-def _drop_chance(joined: Arrays, setting: Setting) -> None:
-    """Withdraw claims whose correlation unrelated lines reach too often on the same layout."""
-    share = setting.success.false_alarm_below
-    if share >= 1.0 or setting.simulation.method != "correlation":
-        return
-    reached = np.nan_to_num(joined["r_unrelated"], nan=-1.0)
-    limit = np.quantile(reached.reshape(len(reached), -1), 1.0 - share, axis=1)
-    chance = (joined["claim"] > 0) & (joined["r_max"] <= limit[:, None])
-    joined["claim"] = joined["claim"] * ~chance
-    joined["success"] = joined["success"] * ~chance
-    joined["reason"] = np.where(chance, CHANCE, joined["reason"])
-
-
 def _table(job: Job, parts: list[Arrays]) -> TrialTable:
     """Join the chunks of one job."""
     joined = {name: np.concatenate([p[name] for p in parts], axis=1) for name in parts[0]}
-    _drop_chance(joined, job.setting)
     return TrialTable(
         target=job.prospect.forecast.name,
         layouts=job.layouts,
@@ -141,7 +153,6 @@ def _table(job: Job, parts: list[Arrays]) -> TrialTable:
         lag_lo_d=joined["lag_lo_d"],
         lag_hi_d=joined["lag_hi_d"],
         r_max=joined["r_max"],
-        r_unrelated=joined["r_unrelated"],
         epochs_line=joined["epochs_line"].astype(np.int64),
         epochs_continuum=joined["epochs_continuum"].astype(np.int64),
         hours=joined["hours"],

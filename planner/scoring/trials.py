@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
-from dataclasses import replace
+from collections.abc import Iterator
+from dataclasses import dataclass, replace
+from typing import NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
@@ -13,14 +15,21 @@ from planner.model.trial import FeedNights, Prospect
 from planner.recovery import joined
 from planner.scoring.draws import UNRELATED, Draw, Setting, draw_trial
 from planner.scoring.placing import Placing, place_in
-from planner.scoring.recovering import Curves, judge, peaks_of_strangers, recover
+from planner.scoring.recovering import (
+    REASONS,
+    Curves,
+    enough,
+    judge,
+    peaks_of_strangers,
+    recover,
+)
 
 __all__ = [
+    "Task",
     "Used",
-    "empty_table",
-    "fill",
     "nights_used",
     "observe",
+    "run_strangers",
     "run_trials",
     "with_spectra",
 ]
@@ -83,30 +92,73 @@ def observe(prospect: Prospect, draw: Draw, used: Used) -> Curves:
     return Curves(*streams[0], *streams[1])
 
 
-def run_trials(
-    setting: Setting, prospect: Prospect, layouts: tuple[Layout, ...], first: int, last: int
-) -> dict[str, NDArray[np.float64]]:
-    """Run trials `first` to `last` - 1 of every layout of one target.
+@dataclass(frozen=True, slots=True)
+class Task:
+    """Some trials of one target."""
+
+    setting: Setting
+    prospect: Prospect
+    layouts: tuple[Layout, ...]
+    used: tuple[Used, ...] | None
+    """None: the target has the telescopes to itself. Else, for the one layout, the nights that a
+    schedule gave it in each of the trials."""
+    first: int
+    last: int
+    limits: tuple[float, ...] | None = None
+    """For each layout: correlation that a claim must exceed besides what the rule asks."""
+
+
+class _Case(NamedTuple):
+    """One trial of one layout that can be scheduled."""
+
+    layout: int
+    trial: int
+    draw: Draw
+    used: Used
+    span_d: float
+    label: str
+
+
+def _cases(task: Task) -> Iterator[_Case]:
+    """Yield every trial of every layout; layouts share a trial's draws."""
+    placings = [place_in(task.prospect, layout) for layout in task.layouts]
+    for trial in range(task.first, task.last):
+        draw = draw_trial(task.setting, task.prospect, trial)
+        for i, (layout, placing) in enumerate(zip(task.layouts, placings, strict=True)):
+            if placing.first.size == 0:
+                continue
+            span = float(placing.last[-1] - placing.first[0])
+            if task.used is None:
+                used = nights_used(task.prospect, layout, placing, draw.usable)
+                yield _Case(i, trial, draw, used, span, str(layout))
+            else:
+                used = task.used[trial - task.first]
+                yield _Case(i, trial, draw, used, span, f"executed {layout}")
+
+
+def run_strangers(task: Task) -> dict[str, NDArray[np.float64]]:
+    """Return the peak correlations of lines that know nothing of the continuum.
 
     Returns
     -------
-    dict of (layouts, trials) float64 arrays
-        The columns of `TrialTable`.
+    dict of one (layouts, trials, lines) float64 array
+        ``r_unrelated``; NaN where none could be claimed.
     """
-    table = empty_table(len(layouts), last - first)
-    placings = [place_in(prospect, layout) for layout in layouts]
-    for trial in range(first, last):
-        draw = draw_trial(setting, prospect, trial)
-        for i, (layout, placing) in enumerate(zip(layouts, placings, strict=True)):
-            at = (i, trial - first)
-            table["lag_true_d"][at] = draw.lag_obs_d
-            if placing.first.size == 0:
-                table["reason"][at] = 1
-                continue
-            used = nights_used(prospect, layout, placing, draw.usable)
-            span = float(placing.last[-1] - placing.first[0])
-            fill(table, at, setting, prospect, draw, used, span, str(layout), trial)
-    return table
+    shape = (len(task.layouts), task.last - task.first, UNRELATED)
+    peaks = np.full(shape, np.nan)
+    detrend = task.setting.simulation.detrend
+    for case in _cases(task):
+        curves = observe(task.prospect, case.draw, case.used)
+        if enough(curves):
+            strangers = [
+                observe(task.prospect, replace(case.draw, line=line), case.used).f_line
+                for line in case.draw.unrelated
+            ]
+            found = peaks_of_strangers(
+                task.prospect, curves, strangers, case.span_d, detrend=detrend
+            )
+            peaks[case.layout, case.trial - task.first, : len(found)] = found
+    return {"r_unrelated": peaks}
 
 
 _LAGS = ("lag_true_d", "lag_d", "lag_lo_d", "lag_hi_d", "r_max")
@@ -116,30 +168,42 @@ _COUNTS = (
 )  # fmt: skip
 
 
-def empty_table(layouts: int, trials: int) -> dict[str, NDArray[np.float64]]:
-    """Return the columns of `TrialTable`, still without outcomes."""
-    table = {name: np.full((layouts, trials), np.nan) for name in _LAGS}
-    table["r_unrelated"] = np.full((layouts, trials, UNRELATED), np.nan)
-    return table | {name: np.zeros((layouts, trials)) for name in _COUNTS}
+def run_trials(task: Task) -> dict[str, NDArray[np.float64]]:
+    """Run the trials of a task: observe, recover, judge.
+
+    Returns
+    -------
+    dict of (layouts, trials) float64 arrays
+        The columns of `TrialTable`.
+    """
+    shape = (len(task.layouts), task.last - task.first)
+    table = {name: np.full(shape, np.nan) for name in _LAGS}
+    table |= {name: np.zeros(shape) for name in _COUNTS}
+    table["reason"][:] = REASONS.index("cannot be scheduled")
+    for case in _cases(task):
+        at = (case.layout, case.trial - task.first)
+        limit = -np.inf if task.limits is None else task.limits[case.layout]
+        curves = observe(task.prospect, case.draw, case.used)
+        found = recover(
+            task.setting, task.prospect, curves, case.span_d, case.label, case.trial, limit
+        )
+        claim, success, reason = judge(found, case.draw.lag_obs_d, task.setting.success, limit)
+        table["lag_true_d"][at] = case.draw.lag_obs_d
+        table["claim"][at], table["success"][at], table["reason"][at] = claim, success, reason
+        table["epochs_continuum"][at] = curves.t_continuum.size
+        table["epochs_line"][at] = curves.t_line.size
+        _add_hours(table, at, task.prospect, case.used)
+        if found is not None:
+            table["lag_d"][at] = found.lag_d
+            table["lag_lo_d"][at], table["lag_hi_d"][at] = found.lag_lo_d, found.lag_hi_d
+            table["r_max"][at] = found.r_max
+    return table
 
 
-def fill(
-    table: dict[str, NDArray[np.float64]],
-    at: tuple[int, int],
-    setting: Setting,
-    prospect: Prospect,
-    draw: Draw,
-    used: Used,
-    span_d: float,
-    label: str,
-    trial: int,
+def _add_hours(
+    table: dict[str, NDArray[np.float64]], at: tuple[int, int], prospect: Prospect, used: Used
 ) -> None:
-    """Observe, recover and judge one trial, and write it into the table."""
-    curves = observe(prospect, draw, used)
-    found = recover(setting, prospect, curves, span_d, label, trial)
-    claim, success, reason = judge(found, draw.lag_obs_d, setting.success)
-    table["epochs_continuum"][at] = curves.t_continuum.size
-    table["epochs_line"][at] = curves.t_line.size
+    """Count the clock and shutter hours of the nights used."""
     for kind, feeds, taken in (("", prospect.continuum, used[0]), ("line", prospect.line, used[1])):
         for feed, mine in zip(feeds, taken, strict=True):
             visits = np.count_nonzero(mine)
@@ -147,15 +211,3 @@ def fill(
             table["hours"][at] += hours
             table["hours_line"][at] += hours if kind == "line" else 0.0
             table["hours_shutter"][at] += visits * feed.exposure_s / 3600
-    table["claim"][at], table["success"][at], table["reason"][at] = claim, success, reason
-    if found is not None and setting.simulation.method == "correlation":
-        strangers = [
-            observe(prospect, replace(draw, line=line), used).f_line for line in draw.unrelated
-        ]
-        table["r_unrelated"][at][: len(strangers)] = peaks_of_strangers(
-            prospect, curves, strangers, span_d, detrend=setting.simulation.detrend
-        )
-    if found is not None:
-        table["lag_d"][at] = found.lag_d
-        table["lag_lo_d"][at], table["lag_hi_d"][at] = found.lag_lo_d, found.lag_hi_d
-        table["r_max"][at] = found.r_max

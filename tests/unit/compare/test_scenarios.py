@@ -22,7 +22,6 @@ def scenario(name, success, claim=None, decision="observe"):
         nan,
         nan,
         nan,
-        nan,
         count,
         count,
         nan,

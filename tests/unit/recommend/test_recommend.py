@@ -25,7 +25,7 @@ def table(reasons):
     nan = np.full(shape, np.nan)
     reason = np.tile(np.array(reasons, dtype=np.int8), (len(LAYOUTS), 1))
     return TrialTable(
-        "One", LAYOUTS, nan, nan, nan, nan, nan, nan, np.zeros(shape, int), np.zeros(shape, int),
+        "One", LAYOUTS, nan, nan, nan, nan, nan, np.zeros(shape, int), np.zeros(shape, int),
         nan, nan, nan,
         reason == 0, reason == 0, reason,
     )  # fmt: skip

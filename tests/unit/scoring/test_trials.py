@@ -7,7 +7,7 @@ from planner.model.campaign import Layout
 from planner.scoring import REASONS, Job, Store, score_targets, scores_of, setting_of
 from planner.scoring.draws import draw_trial, sky_of_trial
 from planner.scoring.recovering import Found, judge
-from planner.scoring.trials import nights_used, run_trials
+from planner.scoring.trials import Task, nights_used, run_trials
 
 LAYOUTS = (Layout(3, 1, 120, 1), Layout(6, 1, 60, 1))
 
@@ -56,8 +56,8 @@ def test_claims_and_successes_are_kept_apart(campaign, found, truth, claim, succ
 
 
 def test_the_same_draws_serve_every_layout(setting, prospect):
-    both = run_trials(setting, prospect, LAYOUTS, 0, 3)
-    alone = run_trials(setting, prospect, LAYOUTS[1:], 0, 3)
+    both = run_trials(Task(setting, prospect, LAYOUTS, None, 0, 3))
+    alone = run_trials(Task(setting, prospect, LAYOUTS[1:], None, 0, 3))
     for name, column in alone.items():
         assert np.array_equal(column[0], both[name][1], equal_nan=True), name
     assert np.array_equal(both["lag_true_d"][0], both["lag_true_d"][1])
