@@ -21,7 +21,7 @@ def recover(options: Namespace) -> int:
 
     from planner.base.files import claim_folder, write_bytes
     from planner.campaign import cuts_named, read_light_curve
-    from planner.scoring import Curves, key_of, recover_own
+    from planner.scoring import STRANGERS, Curves, key_of, recover_own
 
     continuum, line = read_light_curve(options.continuum), read_light_curve(options.line)
     if np.ptp(np.concatenate([continuum.time_d, line.time_d])) == 0:
@@ -48,7 +48,8 @@ def recover(options: Namespace) -> int:
     for alias in found.likelihood.aliases[1:]:
         say(f"another peak of the likelihood: {significant(alias.lag_d)} d holds {alias.share:.0%}")
     if np.isfinite(found.chance):
-        say(f"unrelated lines correlate as well in {found.chance:.1%} of simulations")
+        often = f"{found.chance:.1%}" if found.chance else "none"
+        say(f"unrelated lines correlate as well in {often} of {STRANGERS} simulations")
     if np.isfinite(found.likelihood.log_odds):
         odds = np.exp(min(found.likelihood.log_odds, 30.0))
         say(f"odds of an echo against an unrelated line: {odds:.3g} to 1")

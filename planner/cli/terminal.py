@@ -53,6 +53,8 @@ class ProgressLine:
         first = what not in self._started
         start = self._started.setdefault(what, time.monotonic())
         seconds = time.monotonic() - start
+        if done == total:
+            del self._started[what]
         if self._live:
             end = f" in {seconds:.0f} s\n" if done == total else "\r"
             sys.stderr.write(f"{what}: {done}/{total}{end}")

@@ -239,6 +239,8 @@ def _completed(lags: Floats, scan: Floats, others: Callable[[Floats], Floats]) -
 
 def _record(lags: Floats, log_density: Floats, log_odds: float) -> LagPosterior:
     """Return the posterior of a log density on a grid."""
+    if int(np.argmax(log_density)) in {0, lags.size - 1}:
+        return _nothing("the likelihood peaks at the edge of the lags searched")
     density = normalised(lags, log_density)
     lo, middle, hi = quantiles(lags, density, np.array([0.16, 0.5, 0.84]))
     top = int(np.argmax(density))

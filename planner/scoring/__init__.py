@@ -11,7 +11,7 @@ from planner.scoring.example import Example, example_of
 from planner.scoring.forecasting import LayoutForecast, ambiguity_of, forecast_layouts
 from planner.scoring.intervals import wilson
 from planner.scoring.opinions import opinions_of
-from planner.scoring.own import OwnRecovery, recover_own
+from planner.scoring.own import STRANGERS, OwnRecovery, recover_own
 from planner.scoring.placing import Placing, place, place_in
 from planner.scoring.prospects import prospect_of
 from planner.scoring.recovering import REASONS, Curves
@@ -22,6 +22,7 @@ from planner.scoring.trials import Used, with_spectra
 
 __all__ = [
     "REASONS",
+    "STRANGERS",
     "Curves",
     "Depth",
     "Example",

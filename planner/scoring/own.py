@@ -29,12 +29,15 @@ from planner.recovery import (
 )
 from planner.scoring.recovering import Curves
 
-__all__ = ["OwnRecovery", "recover_own"]
+__all__ = ["STRANGERS", "OwnRecovery", "recover_own"]
 
 Floats = NDArray[np.float64]
 
-LAGS, RESAMPLES, STRANGERS = 961, 1000, 400
+LAGS, RESAMPLES = 961, 1000
 """More than in trials, for these curves are recovered but once."""
+
+STRANGERS = 400
+"""Unrelated lines simulated on the same epochs."""
 
 USUAL_TIMESCALE, SCATTER_DEX = 0.3, 0.6
 """Prior of the damping timescale over the continuum's baseline: wide; fits of short baselines come

@@ -33,10 +33,12 @@ streams:
 season_lengths: [60 d, 120 d]
 seasons: [1, 2]
 simulation: {trials: 20, resamples: 30}
+success: {robust_to: [outliers]}
 """
 
 TABLES = (
-    "lags", "windows", "seasons", "epochs", "scores", "recommendation", "schedule", "time",
+    "lags", "windows", "seasons", "epochs", "scores", "recommendation", "opinions", "schedule",
+    "time",
 )  # fmt: skip
 
 
@@ -313,6 +315,30 @@ def test_compare_pairs_scenarios(file, tmp_path, capsys):
     assert (first["name"], second["name"]) == ("small", "cloudy")
     assert second["lags"] < first["lags"]
     assert second["gain"] == pytest.approx(second["lags"] - first["lags"])
+
+
+@pytest.mark.slow
+def test_layouts_are_ranked_without_trials(file, capsys):
+    assert main(["score", str(file), "--forecast", "--json", "--workers", "1", "--quiet"]) == 0
+    rows = json.loads(capsys.readouterr().out)["forecast"]
+    one = [row for row in rows if row["target"] == "One"]
+    assert len(one) == 8
+    shares = [row["success"] for row in one]
+    assert shares == sorted(shares, reverse=True)
+    long = {row["season_length"]: row for row in one if row["seasons"] == 1}
+    assert long[120]["error"] < long[60]["error"]
+    assert all(row["success"] == 0 for row in rows if row["target"] == "North")
+
+
+@pytest.mark.slow
+def test_second_opinions_stand_beside_the_recommendation(planned):
+    rows = Table.read(planned / "opinions.ecsv").to_pandas().set_index(["target", "what"])
+    assert rows.loc[("One", "likelihood"), "success"] > 0.5
+    assert rows.loc[("One", "unrelated line"), "false_claims"] <= 0.25
+    assert rows.loc[("One", "outliers"), "trials"] == 20
+    page = (planned / "report.html").read_text()
+    assert "recovered by likelihood" in page
+    assert "disturbed: outliers" in page
 
 
 @pytest.mark.slow

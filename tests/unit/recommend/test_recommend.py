@@ -4,9 +4,9 @@ import numpy as np
 import pytest
 
 from planner.model.campaign import Layout, SuccessRule
-from planner.model.plan import Help
+from planner.model.plan import Help, Opinion
 from planner.model.trial import Score, TrialTable
-from planner.recommend import changes_for, choose, helps_of, recommend
+from planner.recommend import changes_for, choose, hardened, helps_of, recommend
 
 RULE = SuccessRule(0.8, 0.3, 0.3, 0.5, 1.0)
 LAYOUTS = tuple(Layout(c, 1.0, length, 1) for c in (3.0, 6.0) for length in (60.0, 120.0))
@@ -93,6 +93,22 @@ def test_reasons_do_not_boast_of_changes_that_bring_nothing():
     helps = (Help("images of 20 min", 0.5, 0.0, 3.0), Help("seasons of 90 d", 0.4, -0.1, 9.0))
     advice = recommend("One", scores(*[(0.5, 10)] * 4), table([4] * 10), RULE, helps)
     assert advice.why.endswith("none of the changes tried would help")
+
+
+def test_a_disturbance_that_breaks_the_goal_makes_a_target_risky():
+    rule = replace(RULE, robust_to=("outliers",))
+    advice = recommend(
+        "One", scores((0.5, 10), (0.9, 30), (0.95, 40), (0.99, 90)), table([0]), rule
+    )
+    broken = Opinion("One", "outliers", 0.6, 0.5, 0.7, 0.1, 0.2, 100)
+    assert hardened(advice, [broken], rule).decision == "risky"
+    assert hardened(advice, [broken], rule).why.endswith("but not robust to outliers (60%)")
+    for harmless in (
+        replace(broken, success_lo=0.85),
+        replace(broken, target="Two"),
+        replace(broken, what="likelihood"),
+    ):
+        assert hardened(advice, [harmless], rule) == advice
 
 
 def test_changes_differ_from_the_best_layout_in_one_thing_each(campaign):
