@@ -89,6 +89,11 @@ class LagPosterior:
     log_density: Floats
     """Its logarithm, finite also where the density is too small to be stored."""
 
+    @property
+    def at_edge(self) -> bool:
+        """Whether the density is highest at an end of the search: the lag may lie beyond it."""
+        return bool(self.lags_d.size) and self.peak_d in {self.lags_d[0], self.lags_d[-1]}
+
 
 def lag_posterior(
     t1_d: ArrayLike,
@@ -239,8 +244,6 @@ def _completed(lags: Floats, scan: Floats, others: Callable[[Floats], Floats]) -
 
 def _record(lags: Floats, log_density: Floats, log_odds: float) -> LagPosterior:
     """Return the posterior of a log density on a grid."""
-    if int(np.argmax(log_density)) in {0, lags.size - 1}:
-        return _nothing("the likelihood peaks at the edge of the lags searched")
     density = normalised(lags, log_density)
     lo, middle, hi = quantiles(lags, density, np.array([0.16, 0.5, 0.84]))
     top = int(np.argmax(density))

@@ -111,7 +111,7 @@ def recover_own(curves: Curves, rule: SuccessRule, seed: int, *, detrend: bool) 
         discrete=discrete,
         chance=chance,
         correlation_claim=is_claim(result, rule) and chance < rule.false_alarm_below and together,
-        likelihood_claim=bool(likely) and bool(odds) and together,
+        likelihood_claim=bool(likely) and bool(odds) and together and not posterior.at_edge,
         agree=bool(overlap),
     )
 

@@ -150,6 +150,8 @@ def _of_result(result: LagResult) -> Found:
 
 
 def _of_posterior(result: LagPosterior) -> Found:
+    if result.at_edge:
+        return Found(np.nan, np.nan, np.nan, np.inf, 0.0, result.log_odds)
     lag, lo, hi = result.lag_d, result.lag_lo_d, result.lag_hi_d
     return Found(lag, lo, hi, np.inf, result.primary_share, result.log_odds)
 
