@@ -21,8 +21,8 @@ _CODES = {"top_hat": 0, "shell": 0, "gaussian": 1, "ring": 2}
 class Response:
     """A response function of unit area whose mean delay is the lag.
 
-    Standard transfer functions of the geometries of Peterson (2001, Advanced Lectures on the
-    Starburst-AGN Connection, 3): a thin spherical shell that emits isotropically answers evenly
+    Standard transfer functions of the geometries of Blandford & McKee (1982, ApJ 255,
+    419): a thin spherical shell that emits isotropically answers evenly
     between 0 and twice the lag; a thin ring at inclination i with delays
     ``lag (1 + sin i cos phi)``, phi uniform.
     """

@@ -14,27 +14,7 @@ from astropy.table import QTable, Table
 
 from planner.cli.main import main
 
-FILE = """
-campaign: {name: Small, first_night: 2027-03-01, last_night: 2027-08-31, seed: 7}
-targets:
-  - {name: One, ra: "11:42:10", dec: "-32:15:00", redshift: 0.02,
-     magnitude: {band: V, value: 14.9}, variability: {amplitude: 0.4 mag, timescale: 40 d}}
-  - {name: "=Two", ra: "12:10:00", dec: "-20:00:00", redshift: 0.03,
-     magnitude: {band: V, value: 15.5}}
-  - {name: North, ra: "12:10:00", dec: "+80:00:00", redshift: 0.03,
-     magnitude: {band: V, value: 15.5}}
-site: {name: Ridge, latitude: -30.4 deg, longitude: -70.9 deg, weather: {clear: 75 %}}
-telescopes:
-  - {name: Big, aperture: 2 m, time: {least_hours_per_night: 2}}
-  - {name: Small, aperture: 0.5 m}
-streams:
-  continuum: {telescope: Small, cadence: 1 night}
-  line: {telescope: Big, cadence: [3 nights, 6 nights], standards: 15 min}
-season_lengths: [60 d, 120 d]
-seasons: [1, 2]
-simulation: {trials: 20, resamples: 30}
-success: {robust_to: [outliers]}
-"""
+FILE = Path(__file__).with_name("small.yaml").read_text()
 
 TABLES = (
     "lags", "windows", "seasons", "epochs", "scores", "recommendation", "opinions", "schedule",

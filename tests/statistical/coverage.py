@@ -9,7 +9,7 @@ from dataclasses import replace
 from pathlib import Path
 
 import numpy as np
-from scipy.stats import binom
+from scipy.stats import beta
 
 from planner.campaign.cuts import cuts_named
 from planner.model.campaign import Layout, SuccessRule
@@ -37,7 +37,7 @@ def job_of(case, campaign, prospect, method, trials, resamples=100, rule=USUAL, 
     layout, lag_d, error1, error2 = CASES[case]
     length, seasons = int(layout.season_length_d), layout.seasons
     night = np.concatenate([np.arange(length) + YEAR_D * s for s in range(seasons)])
-    shown = tuple(
+    visible = tuple(
         Season(i, YEAR_D * i, YEAR_D * i + length - 1, length, 0) for i in range(seasons)
     )
     forecast = replace(
@@ -57,9 +57,7 @@ def job_of(case, campaign, prospect, method, trials, resamples=100, rule=USUAL, 
         )
         for feed, error in ((prospect.line[0], error2), (prospect.continuum[0], error1))
     )
-    simulation = replace(
-        campaign.simulation, trials=trials, resamples=resamples, method=method
-    )
+    simulation = replace(campaign.simulation, trials=trials, resamples=resamples, method=method)
     setting = replace(
         setting_of(campaign),
         nights=int(night[-1]) + 1,
@@ -68,7 +66,7 @@ def job_of(case, campaign, prospect, method, trials, resamples=100, rule=USUAL, 
         unrelated=unrelated,
     )
     case_prospect = replace(
-        prospect, forecast=forecast, line=(line,), continuum=(continuum,), seasons=shown
+        prospect, forecast=forecast, line=(line,), continuum=(continuum,), seasons=visible
     )
     return Job(setting, case_prospect, (layout,))
 
@@ -89,15 +87,13 @@ def inside(table):
 
 def interval(hits, trials):
     """Return the exact central 95 % interval of a share (Clopper & Pearson 1934)."""
-    from scipy.stats import beta
-
     lo = beta.ppf(0.025, hits, trials - hits + 1) if hits else 0.0
     hi = beta.ppf(0.975, hits + 1, trials - hits) if hits < trials else 1.0
     return lo, hi
 
 
-def shown(hits, trials):
-    """Return a share with its interval as text."""
+def words(hits, trials):
+    """Return a share, its interval and the number of trials as text."""
     if trials == 0:
         return "      none       "
     lo, hi = interval(hits, trials)
@@ -111,12 +107,14 @@ def print_false_claims(campaign, prospect, trials):
         tables = run(jobs, workers=2)
         claims = [int(t.claim.sum()) for t in tables]
         for case, count in zip(CASES, claims, strict=True):
-            print(f"{method:12s} {case:12s} {shown(count, trials)}", flush=True)
-        print(f"{method:12s} {'all':12s} {shown(sum(claims), trials * len(CASES))}", flush=True)
+            print(f"{method:12s} {case:12s} {words(count, trials)}", flush=True)
+        print(f"{method:12s} {'all':12s} {words(sum(claims), trials * len(CASES))}", flush=True)
 
 
 def print_coverage(campaign, prospect, trials):
-    print("Truth inside the 68 % interval: every lag; claims by the usual cuts: share [95 %] trials")
+    print(
+        "Truth inside the 68 % interval: every lag; claims by the usual cuts: share [95 %] trials"
+    )
     for method in ("correlation", "likelihood"):
         for rule in (ANY_LAG, USUAL):
             jobs = [job_of(c, campaign, prospect, method, trials, 300, rule) for c in CASES]
@@ -126,8 +124,8 @@ def print_coverage(campaign, prospect, trials):
                 right = int(table.success.sum())
                 name = "every lag" if rule is ANY_LAG else "claims"
                 print(
-                    f"{method:12s} {case:12s} {name:10s} {shown(int(which.sum()), which.size)}"
-                    f"  right {shown(right, which.size)}",
+                    f"{method:12s} {case:12s} {name:10s} {words(int(which.sum()), which.size)}"
+                    f"  right {words(right, which.size)}",
                     flush=True,
                 )
 
