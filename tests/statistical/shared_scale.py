@@ -72,7 +72,7 @@ def main():
     ax.set_ylabel("trials of 300")
     ax.set_title(f"Spectra with a scale error of {SCALE_ERROR:.0%} a night", fontsize=10)
     ax.legend(frameon=False)
-    figure.savefig(Path(__file__).with_suffix(".png"), dpi=120)
+    figure.savefig(Path(__file__).with_suffix(".png"), dpi=125)
 
 
 def _fixtures(conftest):
