@@ -191,7 +191,7 @@ CASES = {
     "wanted error below the floor": ("exposure: 20 min", "exposure: auto, wanted_error: 2 %, "
         "floor: 3 %", 29, "streams.line.wanted_error", "2 % with a floor of 3 %"),
     "moon nobody knows": ("exposure: 20 min", "moon: gray", 29, "streams.line.moon",
-        "gray is not a number; expected any, grey, dark"),
+        "gray is not a number; expected any (or bright), grey, dark"),
     "telescope twice in a stream": ("exposure: 20 min", "also: [{telescope: C19}]", 29,
         "streams.line.also[1].telescope", "C19 a second time in this stream"),
     "unknown telescope joins": ("exposure: 20 min", "also: [{telescope: C91}]", 29,
