@@ -190,7 +190,8 @@ def example_figure(example: Example) -> Figure:
         result = example.result
         if result is not None:
             correlation.plot(result.lags_d, result.r, color=INK, lw=1)
-            correlation.set_xlim(result.lags_d[0], result.lags_d[-1])
+            beyond = 1.05 * example.lag_true_d  # a lag out of reach is shown, too
+            correlation.set_xlim(result.lags_d[0], max(result.lags_d[-1], beyond))
             found = result.centroids_d[np.isfinite(result.centroids_d)]
             bins = np.linspace(result.lags_d[0], result.lags_d[-1], 61)
             centroids.hist(found, bins=bins.tolist(), color=GREY)
