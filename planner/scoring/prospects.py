@@ -95,7 +95,8 @@ def _feed_nights(
     telescope, site = campaign.telescope(feed.telescope), campaign.site(feed.telescope)
     sky = skies[site.name]
     depth = depth_of(campaign, kind, feed, target, forecast)
-    rows_of = _Rows(sky, index, feed, telescope.time)
+    stream = campaign.line if kind == "line" else campaign.continuum
+    rows_of = _Rows(sky, index, feed, (telescope.time, stream.time))
     exposure, reached = _exposure(feed, depth, rows_of)
     length_s = visit_s(feed, telescope, exposure)
     w, rows = rows_of.that_hold(length_s / SECONDS_PER_DAY)
@@ -150,15 +151,17 @@ def _in_spectra(
 class _Rows:
     """The windows of one target that one telescope may use."""
 
-    def __init__(self, sky: SiteSky, index: int, feed: Feed, time: TimeAllotment) -> None:
+    def __init__(
+        self, sky: SiteSky, index: int, feed: Feed, times: tuple[TimeAllotment, ...]
+    ) -> None:
         """Leave out blocked nights, and moonlight where the stream's moon limit forbids it."""
-        self.time = time
+        self.times = times
         dates, lit = sky.nights.night, sky.nights.moon_illumination
         parts = []
         bright = lit > feed.moon_illumination_max
         for w, mine in ((sky.windows, ~bright), (sky.moonless, bright)):
             ours = (w.target == index) & mine[w.night]
-            for first, last in time.blocked:
+            for first, last in (run for time in times for run in time.blocked):
                 ours &= (dates[w.night] < first) | (dates[w.night] > last)
             parts.append(_only(w, np.flatnonzero(ours)))
         self.windows = _in_time_order(_joined(*parts))
@@ -166,8 +169,8 @@ class _Rows:
     def that_hold(self, visit_d: float) -> tuple[Windows, NDArray[np.int64]]:
         """Return the windows, and of each night the row of the longest that holds a visit."""
         w = self.windows
-        limit = self.time.hours_per_night
-        if limit is not None and visit_d * 24 > limit + 1e-9:
+        limits = [t.hours_per_night for t in self.times if t.hours_per_night is not None]
+        if limits and visit_d * 24 > min(limits) + 1e-9:
             return w, np.empty(0, dtype=np.int64)
         rows = np.flatnonzero(w.end_mjd - w.start_mjd >= visit_d)
         longest_first = rows[np.lexsort((w.start_mjd[rows] - w.end_mjd[rows], w.night[rows]))]

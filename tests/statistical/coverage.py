@@ -17,7 +17,7 @@ from planner.model.sky import Season
 from planner.scoring import Job, Store, score_targets, setting_of
 
 USUAL = cuts_named("usual")
-ANY_LAG = SuccessRule(0.8, 0.3, np.inf, 0.0, -np.inf)
+ANY_LAG = SuccessRule(0.8, 0.3, np.inf, 0.0, -1e9)
 """Every lag is a claim, however wide its interval."""
 
 # Layout, median lag in days, errors of continuum and line (fractions of the flux; the rms of the
@@ -60,6 +60,7 @@ def job_of(case, campaign, prospect, method, trials, resamples=100, rule=USUAL, 
     simulation = replace(campaign.simulation, trials=trials, resamples=resamples, method=method)
     setting = replace(
         setting_of(campaign),
+        seed=1 + list(CASES).index(case),
         nights=int(night[-1]) + 1,
         simulation=simulation,
         success=rule,

@@ -14,6 +14,7 @@ from planner.model.observatory import (
     SkyQuality,
     Spectrograph,
     Telescope,
+    TimeAllotment,
     WeatherClimate,
 )
 from planner.pipeline import observe_sky
@@ -44,6 +45,20 @@ def test_a_dark_stream_meets_no_bright_moon_that_is_up(campaign, forecast, site)
     assert not (dark.sky_ab_mag < 20.0).any()
     gaps = np.diff(dark.night)
     assert gaps.max() >= 3, "bright time makes runs of nights without epochs"
+
+
+@pytest.mark.parametrize("whose", ["telescope", "stream"])
+def test_blocked_nights_of_telescope_and_stream_are_left_out(campaign, forecast, whose):
+    first = campaign.first_night
+    time = TimeAllotment(blocked=((first + 10, first + 40),))
+    if whose == "telescope":
+        telescopes = tuple(replace(t, time=time) for t in campaign.telescopes)
+        campaign = replace(campaign, telescopes=telescopes)
+    else:
+        campaign = replace(campaign, line=replace(campaign.line, time=time))
+    night = prospect_for(campaign, forecast).line[0].night
+    assert night.size
+    assert not ((night >= 10) & (night <= 40)).any()
 
 
 def test_the_best_time_is_no_worse_than_that_of_least_airmass(campaign, forecast, site):
