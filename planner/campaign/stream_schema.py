@@ -72,7 +72,7 @@ def _within(value: float, text: str, ends: tuple[float, float], expected: str) -
 
 
 _MOONS = {"any": 1.0, "bright": 1.0, "grey": 0.65, "dark": 0.25}
-_MOON = "any (or bright), grey, dark, or the largest illuminated part of a moon that is up, such as 40 %"
+_MOON = "any (or bright), grey, dark, or the most illuminated moon allowed up, such as 40 %"
 
 
 def _moon(text: str) -> float:
