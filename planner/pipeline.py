@@ -147,6 +147,7 @@ def score_all(
 def recommend_all(
     campaign: Campaign,
     forecasts: Sequence[Forecast],
+    prospects: Sequence[Prospect],
     tables: Sequence[TrialTable],
     scores: Sequence[Sequence[Score]],
     *,
@@ -160,7 +161,7 @@ def recommend_all(
     for index, of_target in enumerate(scores):
         best, reached = choose(of_target, rule)
         if best is not None and not reached:
-            for change in changes_for(campaign, best):
+            for change in changes_for(campaign, best, prospects[index]):
                 alone = replace(change.campaign, targets=(campaign.targets[index],))
                 prospect = prospects_of(alone, [forecasts[index]], observe_sky(alone))[0]
                 tried.append((index, best, change, prospect))
@@ -280,7 +281,14 @@ def make_plan(
         raise PlanError(no_window(campaign))
     tables, scores = score_all(campaign, prospects, workers=workers, store=store, progress=progress)
     advice = recommend_all(
-        campaign, forecasts, tables, scores, workers=workers, store=store, progress=progress
+        campaign,
+        forecasts,
+        prospects,
+        tables,
+        scores,
+        workers=workers,
+        store=store,
+        progress=progress,
     )
     opinions = opinions_of(
         setting_of(campaign),

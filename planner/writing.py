@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import re
+from collections.abc import Iterable
 from pathlib import Path
 
 from planner import export, report
@@ -34,8 +35,9 @@ def write_plan(plan: Plan, reading: Reading, folder: Path) -> None:
     export.write_csv(schedule, folder / "schedule.csv")
     figures = draw_figures(plan)
     (folder / "figures").mkdir(exist_ok=True)
-    for name, image in figures.items():
-        write_bytes(folder / "figures" / f"{file_name(name)}.png", image)
+    stems = file_names(figures)
+    for title, image in figures.items():
+        write_bytes(folder / "figures" / f"{stems[title]}.png", image)
     defaults = [(d.key, d.value, d.reason) for d in reading.defaults]
     write_bytes(
         folder / "report.html",
@@ -68,6 +70,14 @@ def draw_figures(plan: Plan) -> dict[str, bytes]:
     return figures
 
 
-def file_name(title: str) -> str:
-    """Return a title as a file name that any system takes."""
-    return re.sub(r"[^A-Za-z0-9+.-]+", "-", title).strip("-")
+def file_names(titles: Iterable[str]) -> dict[str, str]:
+    """Return a file name that any system takes for each title, no two alike."""
+    names: dict[str, str] = {}
+    for title in titles:
+        stem = re.sub(r"[^\w+.-]+", "-", title).strip("-.") or "figure"
+        name, number = stem, 1
+        while name.casefold() in {taken.casefold() for taken in names.values()}:
+            number += 1
+            name = f"{stem}-{number}"
+        names[title] = name
+    return names

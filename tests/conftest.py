@@ -144,7 +144,8 @@ def nights():
         middle = FIRST_NIGHT + night + 1.2
         values = {
             "telescope": "Big", "site": "Ridge", "in_spectra_of": None, "scale_error": 0.0,
-            "exposure_s": 1200.0, "standards_s": 0.0, "reached": True,
+            "exposure_s": 1200.0, "standards_s": 0.0, "most_visits": 10**6,
+            "reached": True,
         } | options  # fmt: skip
         return FeedNights(
             night=night,

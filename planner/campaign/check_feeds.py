@@ -4,10 +4,12 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 
+from planner.base.quantities import in_unit
 from planner.campaign.parts import Parts
 from planner.campaign.settle import KINDS, Choices, stream_of
 from planner.campaign.sheet import Sheet
-from planner.campaign.stream_schema import AUTO, ContinuumSection, FeedSection
+from planner.campaign.stream_schema import AUTO, WANTED, ContinuumSection, FeedSection
+from planner.campaign.streams import usual_floor
 from planner.campaign.yaml_nodes import Place
 
 __all__ = ["check_feeds", "feeds_of"]
@@ -36,7 +38,7 @@ def check_feeds(sheet: Sheet, parts: Parts, choices: Choices) -> None:
                 sheet.fault((*path, "telescope"), found, "each telescope once")
             taken.add((str(path[1]), telescope.name))
         _check_instrument(sheet, path, feed)
-        _check_exposure(sheet, path, feed)
+        _check_exposure(sheet, path, feed, parts)
         _check_visit(sheet, path, feed, parts, choices)
     continuum = stream_of(parts, "continuum")
     if isinstance(continuum, ContinuumSection) and continuum.source == "spectra":
@@ -61,16 +63,24 @@ def _check_instrument(sheet: Sheet, path: Place, feed: FeedSection) -> None:
         sheet.fault((*path, full), found, "the width of a slit, such as `slit: 2 arcsec`")
 
 
-def _check_exposure(sheet: Sheet, path: Place, feed: FeedSection) -> None:
+def _check_exposure(sheet: Sheet, path: Place, feed: FeedSection, parts: Parts) -> None:
     if feed.exposure != AUTO:
         for key in ("wanted_error", "longest_exposure"):
             if getattr(feed, key) is not None:
                 sheet.fault((*path, key), "a fixed exposure", "`exposure: auto`, or no such key")
-    elif feed.wanted_error and feed.floor and feed.wanted_error <= feed.floor:
+        return
+    stream = stream_of(parts, str(path[1]))
+    assert stream is not None, "it holds this feed"
+    floor, wanted = feed.floor, feed.wanted_error
+    if floor is None:
+        floor = in_unit(usual_floor(stream)[0], "", "")
+    if wanted is None:
+        wanted = in_unit(WANTED[str(path[1])], "", "")
+    if wanted <= floor:
         sheet.fault(
             (*path, "wanted_error"),
-            f"{100 * feed.wanted_error:g} % with a floor of {100 * feed.floor:g} %",
-            "an error above the calibration floor",
+            f"{100 * wanted:g} % with a floor of {100 * floor:g} %",
+            "an error above the calibration floor, which no exposure beats",
         )
 
 

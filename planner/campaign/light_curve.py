@@ -15,6 +15,9 @@ from planner.campaign.tables import read_csv, read_ecsv
 
 __all__ = ["LightCurve", "read_light_curve"]
 
+LARGEST = 1e100
+"""Squares of larger numbers overflow."""
+
 COLUMNS = ("time", "flux", "flux_error")
 
 
@@ -68,7 +71,7 @@ def _number(
         value = float(cell or "nothing")
     except ValueError:
         value = math.nan
-    if not math.isfinite(value) or (name == "flux_error" and value < 0):
-        expected = "a number of at least 0" if name == "flux_error" else "a number"
+    if not abs(value) < LARGEST or (name == "flux_error" and not value > 0):
+        expected = "a number above 0" if name == "flux_error" else "a number below 1e100"
         problems.append(Problem(str(path), line, name, f"found {cell or 'nothing'}", expected))
     return value

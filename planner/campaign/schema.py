@@ -168,7 +168,7 @@ def _one_night(value: object) -> object:
 
 
 _BLOCKED = "dates such as 2027-05-01, or {from: 2027-05-01, to: 2027-05-09}"
-_HOURS = "hours above 0, such as 120"
+_HOURS = "hours above 0 (of a night, at most 24), such as 4"
 
 
 def _hours(most: float) -> Any:
@@ -273,7 +273,9 @@ def _range(values: tuple[float, ...]) -> tuple[float, ...]:
 class SimulationSection(Section):
     """``simulation``."""
 
-    trials: Annotated[int, counted("a whole number of trials: 100", 1, 100000)] = usual("100")
+    trials: Annotated[
+        int, counted("a whole number of trials from 1 to 100000, such as 100", 1, 100000)
+    ] = usual("100")
     resamples: Annotated[int, counted("a whole number from 10: 100", 10, 100000)] = usual("100")
     method: Annotated[str, choice(("correlation", "likelihood"))] = usual("correlation")
     detrend: Annotated[str, choice(("yes", "no"))] = usual("no")

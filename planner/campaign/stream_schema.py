@@ -21,8 +21,9 @@ from planner.campaign.schema import BRIGHTNESS, Airmass, Band, MagnitudeValue, P
 from planner.campaign.sections import Section, needed, usual
 
 __all__ = [
-    "CALIBRATIONS", "CameraSection", "ContinuumSection", "FeedSection", "LineSection",
-    "ReferenceSection", "SpectrographSection", "StreamSection", "StreamsSection",
+    "AUTO", "CALIBRATIONS", "IMAGING_FLOOR", "WANTED", "CameraSection", "ContinuumSection",
+    "FeedSection", "LineSection", "ReferenceSection", "SpectrographSection", "StreamSection",
+    "StreamsSection",
 ]  # fmt: skip
 
 _TIME = "a time from 1 s to 12 h, such as 20 min"
@@ -35,6 +36,11 @@ _FRAMES = "a whole number of frames, such as 3"
 CALIBRATIONS = {"narrow lines": "2 %", "star in slit": "2 %", "absolute": "5 %"}
 """Ways to put spectra on one scale, and the error that usually remains (common practice, no
 source; narrow-line scaling between 1 and 5 %)."""
+
+IMAGING_FLOOR = "1.5 %"
+WANTED = {"continuum": "3 %", "line": "5 %"}
+"""Calibration error of images, and flux errors to reach, where none are given (common practice, no
+source)."""
 
 AUTO = "auto"
 

@@ -13,6 +13,8 @@ from planner.campaign.settle import Choices, stream_of
 from planner.campaign.stream_schema import (
     AUTO,
     CALIBRATIONS,
+    IMAGING_FLOOR,
+    WANTED,
     CameraSection,
     ContinuumSection,
     FeedSection,
@@ -32,11 +34,9 @@ from planner.model.observatory import (
     TimeAllotment,
 )
 
-__all__ = ["stream_record"]
+__all__ = ["stream_record", "usual_floor"]
 
-_WANTED = {"continuum": "2 %", "line": "5 %"}
 _LONGEST = "1 h"
-_IMAGING_FLOOR = "1.5 %"
 
 
 def stream_record(parts: Parts, choices: Choices, kind: str, time: TimeAllotment) -> Stream:
@@ -45,7 +45,7 @@ def stream_record(parts: Parts, choices: Choices, kind: str, time: TimeAllotment
     assert section is not None, "built from sections with problems"
     in_spectra = isinstance(section, ContinuumSection) and section.source in {"spectra", "both"}
     only_spectra = isinstance(section, ContinuumSection) and section.source == "spectra"
-    floor = _usual_floor(section)
+    floor = usual_floor(section)
     feeds = []
     if not only_spectra:
         feeds.append(_feed(section, f"streams.{kind}", choices, kind, floor))
@@ -61,11 +61,11 @@ def stream_record(parts: Parts, choices: Choices, kind: str, time: TimeAllotment
     )
 
 
-def _usual_floor(section: FeedSection) -> tuple[str, str]:
+def usual_floor(section: FeedSection) -> tuple[str, str]:
     """Return the calibration error to take where none is given, and the reason."""
     if isinstance(section, LineSection):
         return CALIBRATIONS[section.calibration], f"{section.calibration}; {COMMON}"
-    return _IMAGING_FLOOR, COMMON
+    return IMAGING_FLOOR, COMMON
 
 
 def _measurement(section: LineSection) -> LineMeasurement:
@@ -89,7 +89,7 @@ def _feed(
     auto = section.exposure == AUTO
     wanted, longest = 0.0, 0.0
     if auto:
-        wanted = settled("wanted_error", _WANTED[kind], "", COMMON)
+        wanted = settled("wanted_error", WANTED[kind], "", COMMON)
         longest = settled("longest_exposure", _LONGEST, "s", COMMON)
     return Feed(
         telescope=telescope.name,

@@ -16,6 +16,10 @@ if TYPE_CHECKING:
 __all__ = ["check", "lags", "nights", "start", "trace"]
 
 
+MANY = 100
+"""Targets beyond which a check does not look at the sky, so that it stays quick."""
+
+
 def start(options: Namespace) -> int:
     """Write a commented campaign file and target list."""
     from importlib.resources import files
@@ -50,6 +54,9 @@ def check(options: Namespace) -> int:
         return 0
     say(describe(reading))
     campaign = reading.campaign
+    if len(campaign.targets) > MANY:
+        say(f"More than {MANY} targets: `planner lags` tells what one epoch of each measures")
+        return 0
     prospects = pipeline.prospects_of(
         campaign, pipeline.forecast_targets(campaign), pipeline.observe_sky(campaign)
     )
@@ -132,8 +139,8 @@ def _epochs_text(table: Table) -> str:
                 significant(row["signal_to_noise"], 3),
                 significant(100 * row["flux_error"], 2),
                 f"{row['visit']:.2f}",
-                f"{row['airmass']:.2f}",
-                f"{row['sky']:.1f}",
+                f"{row['airmass']:.2f}" if row["nights"] else "–",
+                f"{row['sky']:.1f}" if row["nights"] else "–",
                 str(row["note"]) if row["nights"] else "no window holds a visit",
             ]
             for row in table

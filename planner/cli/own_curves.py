@@ -14,6 +14,9 @@ if TYPE_CHECKING:
 
 __all__ = ["recover"]
 
+NO_LAG = 1
+"""Exit status where no method finds any lag."""
+
 
 def recover(options: Namespace) -> int:
     """Print the lag of an observer's own two light curves, by every method."""
@@ -34,14 +37,17 @@ def recover(options: Namespace) -> int:
             key_of("recover", curves, rule, options.seed, options.detrend),
             replace=options.replace,
         )
-    found = recover_own(curves, rule, options.seed or 1, detrend=options.detrend)
+    seed = 1 if options.seed is None else options.seed
+    found = recover_own(curves, rule, seed, detrend=options.detrend)
     if options.out is not None:
         from planner import report
 
         write_bytes(options.out / "recovery.png", report.png(report.recovery_figure(curves, found)))
+    reasons = (found.correlation.reason, found.likelihood.reason, found.discrete.reason)
+    status = NO_LAG if all(reasons) else 0
     if options.json:
         say_json(_as_dict(found, options.cuts))
-        return 0
+        return status
     say(table_text(["method", "lag [d]", "68 % interval [d]", "claim", "remark"], _rows(found)))
     for lag, share in found.correlation.aliases:
         say(f"another peak of the correlation's lags: {significant(lag)} d holds {share:.0%}")
@@ -54,7 +60,7 @@ def recover(options: Namespace) -> int:
         odds = np.exp(min(found.likelihood.log_odds, 30.0))
         say(f"odds of an echo against an unrelated line: {odds:.3g} to 1")
     say(f"lags in the observed frame; claims by the {options.cuts} cuts")
-    return 0
+    return status
 
 
 def _rows(found: OwnRecovery) -> list[list[str]]:

@@ -228,6 +228,9 @@ def plan(options: Namespace) -> int:
     )
     for r in made.recommendations:
         say(f"\n{r.target}: {r.why}.")
+    missing = sum(u.wanted - u.placed for u in made.unplaced)
+    if missing:
+        say(f"\n{missing} wanted visits find no room in the telescopes' time; see the report")
     clock = sum(t.clock_hours for t in made.time_spent)
     say(
         f"\n{len(made.visits)} visits scheduled, {clock:.0f} clock hours if every night is clear; "
@@ -256,7 +259,7 @@ def compare(options: Namespace) -> int:
             "progress": ProgressLine(quiet=options.quiet),
         }
         tables, scores = pipeline.score_all(campaign, prospects, **work)
-        advice = pipeline.recommend_all(campaign, forecasts, tables, scores, **work)
+        advice = pipeline.recommend_all(campaign, forecasts, prospects, tables, scores, **work)
         scenarios.append(Scenario(path.stem, tables, advice))
     results = compare_scenarios(scenarios)
     if options.json:

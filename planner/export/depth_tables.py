@@ -7,6 +7,7 @@ from collections.abc import Sequence
 import numpy as np
 from astropy.table import Table
 
+from planner.agn import LINES
 from planner.export.columns import rounded, significant, table_of
 from planner.model.plan import Opinion, TimeSpent
 from planner.model.trial import FeedNights, Prospect
@@ -16,12 +17,13 @@ __all__ = ["epochs_table", "opinions_table", "time_table"]
 
 def epochs_table(prospects: Sequence[Prospect]) -> Table:
     """Return what one visit of each telescope to each target measures, at median conditions."""
-    rows = [
-        (p.forecast.name, kind, nights)
+    told = [
+        (p, kind, nights)
         for p in prospects
         for kind, feeds in (("line", p.line), ("continuum", p.continuum))
         for nights in feeds
     ]
+    rows = [(p.forecast.name, kind, nights) for p, kind, nights in told]
 
     def median(name: str) -> list[float]:
         return [
@@ -61,15 +63,35 @@ def epochs_table(prospects: Sequence[Prospect]) -> Table:
                 "mag / arcsec2",
                 "AB, median of the best times",
             ),
-            ("note", np.array([_note(n) for _, _, n in rows], dtype=str), None, "what stands out"),
+            (
+                "note",
+                np.array([_note(p, kind, n) for p, kind, n in told], dtype=str),
+                None,
+                "what stands out",
+            ),
         ]
     )
 
 
-def _note(nights: FeedNights) -> str:
+OPTICAL_A = (3300.0, 10500.0)
+"""Wavelengths that silicon detectors on the ground reach (common practice, no source)."""
+FAINT = 0.5
+"""Flux error beyond which an epoch says next to nothing (our choice)."""
+
+
+def _note(prospect: Prospect, kind: str, nights: FeedNights) -> str:
+    notes = []
     if nights.in_spectra_of is not None:
-        return "comes with the line's spectra"
-    return "" if nights.reached else "the longest exposure does not reach the wanted error"
+        notes.append("comes with the line's spectra")
+    if not nights.reached:
+        notes.append("the longest exposure does not reach the wanted error")
+    forecast = prospect.forecast
+    observed_a = LINES[forecast.line].wavelength_rest_a * forecast.lag_obs_d / forecast.lag_rest_d
+    if kind == "line" and not OPTICAL_A[0] <= observed_a <= OPTICAL_A[1]:
+        notes.append(f"{forecast.line} lies at {observed_a:.0f} A, out of an optical reach")
+    if nights.night.size and np.median(nights.flux_error) > FAINT:
+        notes.append("too faint: one epoch says next to nothing")
+    return "; ".join(notes)
 
 
 def opinions_table(opinions: Sequence[Opinion]) -> Table:

@@ -47,6 +47,8 @@ class FeedNights:
     """Slew, acquisition, exposure, read-out and overhead."""
     standards_s: float
     """Spent once a night."""
+    most_visits: int
+    """Visits that the time granted on the telescope, and to the stream, pays for."""
     reached: bool
     """False: even the longest exposure does not give the wanted error."""
 

@@ -112,6 +112,6 @@ def _limits(table: TrialTable, score: Score) -> str:
     failed = Counter(int(r) for r in table.reason[at] if r > 0)
     trials = int(np.size(table.reason[at]))
     commonest = sorted(failed.items(), key=lambda item: (-item[1], item[0]))[:2]
-    return "trials fail of: " + ", ".join(
+    return "trials fail mostly of: " + ", ".join(
         f"{REASONS[reason]} ({count / trials:.0%})" for reason, count in commonest
     )

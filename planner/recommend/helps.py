@@ -8,7 +8,7 @@ from dataclasses import dataclass, replace
 from planner.model.campaign import Campaign, Layout
 from planner.model.observatory import Stream
 from planner.model.plan import Help
-from planner.model.trial import Score
+from planner.model.trial import FeedNights, Prospect, Score
 
 __all__ = ["Change", "changes_for", "helps_of"]
 
@@ -25,7 +25,7 @@ class Change:
     layout: Layout
 
 
-def changes_for(campaign: Campaign, best: Score) -> tuple[Change, ...]:
+def changes_for(campaign: Campaign, best: Score, prospect: Prospect) -> tuple[Change, ...]:
     """Return the changes worth trying on the best layout of a target that misses the goal.
 
     Twice as many visits in either stream (not beyond one a night), exposures four times as long in
@@ -56,10 +56,10 @@ def changes_for(campaign: Campaign, best: Score) -> tuple[Change, ...]:
                 replace(layout, cadence_continuum_nights=denser),
             )
         )
-    words, deeper = _deeper(campaign.line)
+    words, deeper = _deeper(campaign.line, prospect.line)
     changes.append(Change(f"spectra {words}", replace(campaign, line=deeper), layout))
     if campaign.continuum.feeds:
-        words, deeper = _deeper(campaign.continuum)
+        words, deeper = _deeper(campaign.continuum, prospect.continuum)
         changes.append(Change(f"images {words}", replace(campaign, continuum=deeper), layout))
     longer = 1.5 * layout.season_length_d
     changes.append(
@@ -76,19 +76,14 @@ def changes_for(campaign: Campaign, best: Score) -> tuple[Change, ...]:
     return tuple(changes)
 
 
-def _deeper(stream: Stream) -> tuple[str, Stream]:
-    """Return a stream with exposures four times as long, and that in words."""
+def _deeper(stream: Stream, nights: Sequence[FeedNights]) -> tuple[str, Stream]:
+    """Return a stream with exposures four times as long as the target's now, and that in words."""
     feeds = tuple(
-        replace(
-            feed,
-            exposure_s=None if feed.exposure_s is None else feed.exposure_s * DEEPER,
-            wanted_error=feed.wanted_error / DEEPER**0.5,
-            longest_s=feed.longest_s * DEEPER,
-        )
-        for feed in stream.feeds
+        replace(feed, exposure_s=now.exposure_s * DEEPER)
+        for feed, now in zip(stream.feeds, nights, strict=False)  # spectra have no visits to deepen
     )
-    exposure = feeds[0].exposure_s
-    words = "four times as long" if exposure is None else f"of {exposure / 60:.3g} min"
+    exposure = nights[0].exposure_s * DEEPER
+    words = f"of {exposure / 60:.3g} min" if exposure >= 60 else f"of {exposure:.3g} s"
     return words, replace(stream, feeds=feeds)
 
 

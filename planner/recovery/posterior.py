@@ -180,6 +180,9 @@ def _refusal(pair: Pair, lo_d: float, hi_d: float) -> str:
         return "the range of lags is empty"
     if min(pair.t1_d.size - pair.offsets.shape[1] + 1, pair.t2_d.size) < MIN_EPOCHS:
         return f"a light curve has fewer than {MIN_EPOCHS} usable epochs"
+    with np.errstate(over="ignore", invalid="ignore"):
+        if not (np.isfinite(pair.y1 @ pair.y1) and np.isfinite(pair.y2 @ pair.y2)):
+            return "fluxes are too large to work with"
     if np.ptp(pair.t1_d) == 0.0 or np.ptp(pair.t2_d) == 0.0:
         return "all epochs of a light curve are at one time"
     if not (pair.e1.min() > 0.0 and pair.e2.min() > 0.0):

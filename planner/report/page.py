@@ -74,8 +74,8 @@ def _summary(plan: Plan) -> list[str]:
     wrong = sum(s.false_claims for s in plan.executed.values())
     goal = plan.campaign.success.goal
     sentences = [
-        f"{met} of {total} targets reach the goal of {100 * goal:.0f}\u00a0% success on their own; "
-        f"{len(kept)} are scheduled.",
+        f"{met} of {total} reach the goal of {100 * goal:.0f}\u00a0% success on their own; "
+        f"scheduled: {len(kept)}.",
     ]
     if kept:
         sentences += [

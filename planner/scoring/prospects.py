@@ -25,6 +25,7 @@ Floats = NDArray[np.float64]
 SECONDS_PER_DAY = 86400.0
 WITH_NARROW_LINES = ("Hbeta", "Halpha")
 """Broad lines with strong narrow lines in the same spectrum: [O III], [N II], [S II]."""
+NO_CAP = 10**6
 TIMES = 7
 """Times of a window that are tried for the smallest error."""
 BETTER = 0.995
@@ -117,6 +118,7 @@ def _feed_nights(
         exposure_s=exposure,
         visit_s=length_s,
         standards_s=feed.standards_s,
+        most_visits=_most_visits((telescope.time, stream.time), length_s + feed.standards_s),
         reached=reached,
     )
 
@@ -144,8 +146,21 @@ def _in_spectra(
         exposure_s=0.0,
         visit_s=0.0,
         standards_s=0.0,
+        most_visits=line.most_visits,
         reached=True,
     )
+
+
+def _most_visits(times: tuple[TimeAllotment, ...], visit_s: float) -> int:
+    """Return how many visits, one a night, the allotments pay for."""
+    most = NO_CAP
+    for time in times:
+        if time.nights is not None:
+            most = min(most, time.nights)
+        if time.hours is not None:
+            night = max(visit_s / 3600, time.least_hours_per_night)
+            most = min(most, int(time.hours / night + 1e-9))
+    return most
 
 
 class _Rows:

@@ -11,6 +11,18 @@ from planner.scoring.placing import place_in
 __all__ = ["scores_of"]
 
 
+def _short_of_time(prospect: Prospect, table: TrialTable, layout: int) -> str:
+    """Say where a layout ends early because the time granted is spent."""
+    for kind, feeds, epochs in (
+        ("spectra", prospect.line, table.epochs_line),
+        ("images", prospect.continuum, table.epochs_continuum),
+    ):
+        most = sum(n.most_visits for n in feeds)
+        if np.median(epochs[layout]) >= most:
+            return f"the time granted ends after {most} {kind}"
+    return ""
+
+
 def scores_of(prospect: Prospect, table: TrialTable) -> list[Score]:
     """Return one score per layout of one target.
 
@@ -44,7 +56,7 @@ def scores_of(prospect: Prospect, table: TrialTable) -> list[Score]:
                 hours_line=float(np.mean(table.hours_line[i])),
                 hours_shutter=float(np.mean(table.hours_shutter[i])),
                 trials=trials if tried else 0,
-                note=placing.note,
+                note=placing.note or _short_of_time(prospect, table, i),
             )
         )
     return scores

@@ -42,7 +42,10 @@ Used = tuple[tuple[NDArray[np.bool_], ...], tuple[NDArray[np.bool_], ...]]
 def nights_used(
     prospect: Prospect, layout: Layout, placing: Placing, usable: dict[str, NDArray[np.bool_]]
 ) -> Used:
-    """Return which nights on offer a target that has the telescopes to itself would use."""
+    """Return which nights on offer a target that has the telescopes to itself would use.
+
+    The time granted is spent from the first night on; a layout that outruns it ends early.
+    """
 
     def taken(nights: FeedNights, cadence: float) -> NDArray[np.bool_]:
         mine: NDArray[np.bool_] = nights_taken(
@@ -52,6 +55,7 @@ def nights_used(
             placing.last,
             float(cadence),
         )
+        mine[np.flatnonzero(mine)[nights.most_visits :]] = False
         return mine
 
     line = tuple(taken(n, layout.cadence_line_nights) for n in prospect.line)

@@ -53,6 +53,8 @@ BAD_CALLS = {
     "a file as folder": (["lags", "small.yaml", "--out", "small.yaml"], "cannot be used"),
     "typo in the file": (["plan", "typo.yaml"], "did you mean `cadence`?"),
     "curve without columns": (["recover", "curve.csv", "curve.csv"], "no column flux, flux_error"),
+    "curve beyond all bounds": (["recover", "huge.csv", "huge.csv"], "a number below 1e100"),
+    "curve without errors": (["recover", "sure.csv", "sure.csv"], "flux_error: found 0"),
     "curve with text": (["recover", "text.csv", "text.csv"], "text.csv:3: flux: found bright"),
 }
 
@@ -64,6 +66,8 @@ def test_bad_calls_end_with_one_message_and_status_2(file, tmp_path, monkeypatch
     (tmp_path / "taken").mkdir()
     (tmp_path / "taken" / "thesis.tex").write_text("")
     (tmp_path / "curve.csv").write_text("time\n1\n")
+    (tmp_path / "huge.csv").write_text("time,flux,flux_error\n1,1e300,1\n2,3,1\n")
+    (tmp_path / "sure.csv").write_text("time,flux,flux_error\n1,1,0\n2,3,1\n")
     (tmp_path / "text.csv").write_text("time,flux,flux_error\n1,2,0.1\n2,bright,0.1\n")
     before = contents(tmp_path)
     monkeypatch.chdir(tmp_path)

@@ -67,7 +67,7 @@ def test_a_line_that_follows_nothing_is_not_claimed(files, capsys):
 
 def test_too_few_epochs_are_said_by_every_method(files, capsys):
     (files / "two.csv").write_text("time,flux,flux_error\n61000,1,0.1\n61009,2,0.1\n")
-    assert main(["recover", str(files / "continuum.csv"), str(files / "two.csv")]) == 0
+    assert main(["recover", str(files / "continuum.csv"), str(files / "two.csv")]) == 1
     text = capsys.readouterr().out
     assert text.count("  none  ") == 3
     assert "fewer than" in text

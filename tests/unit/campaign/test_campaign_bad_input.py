@@ -190,6 +190,10 @@ CASES = {
         29, "streams.line.wanted_error", "a fixed exposure; expected `exposure: auto`"),
     "wanted error below the floor": ("exposure: 20 min", "exposure: auto, wanted_error: 2 %, "
         "floor: 3 %", 29, "streams.line.wanted_error", "2 % with a floor of 3 %"),
+    "usual error below a high floor": ("exposure: 20 min", "exposure: auto, floor: 6 %", 29,
+        "streams.line.wanted_error", "5 % with a floor of 6 %"),
+    "wanted error below the usual floor": ("exposure: 20 min", "exposure: auto, "
+        "wanted_error: 1 %", 29, "streams.line.wanted_error", "1 % with a floor of 2 %"),
     "moon nobody knows": ("exposure: 20 min", "moon: gray", 29, "streams.line.moon",
         "gray is not a number; expected any (or bright), grey, dark"),
     "telescope twice in a stream": ("exposure: 20 min", "also: [{telescope: C19}]", 29,

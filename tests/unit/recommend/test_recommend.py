@@ -67,7 +67,7 @@ def test_the_reason_names_what_trials_fail_of_and_what_helps_most():
     advice = recommend("One", rows, table([0, 5, 5, 4, 5, 0, 0, 0, 0, 7]), RULE, helps)
     assert advice.decision == "risky"
     assert advice.why == (
-        "no layout reaches the goal of 80%; this is the best; trials fail of: error too large "
+        "no layout reaches the goal of 80%; this is the best; trials fail mostly of: error too large "
         "(30%), weak correlation (10%); what would help most: seasons of 90 d (success 75%)"
     )
     assert advice.helps[0].change == "seasons of 90 d"
@@ -111,10 +111,10 @@ def test_a_disturbance_that_breaks_the_goal_makes_a_target_risky():
         assert hardened(advice, [harmless], rule) == advice
 
 
-def test_changes_differ_from_the_best_layout_in_one_thing_each(campaign):
+def test_changes_differ_from_the_best_layout_in_one_thing_each(campaign, prospect):
     best = score(Layout(6.0, 2.0, 60.0, 1), 0.5, 10)
     campaign = replace(campaign, continuum=replace(campaign.continuum, cadence_nights=(2.0,)))
-    changes = {c.words: c for c in changes_for(campaign, best)}
+    changes = {c.words: c for c in changes_for(campaign, best, prospect)}
     assert list(changes) == [
         "spectra every 3 nights",
         "imaging every night",
@@ -128,14 +128,23 @@ def test_changes_differ_from_the_best_layout_in_one_thing_each(campaign):
     assert changes["spectra of 80 min"].campaign.line.feeds[0].exposure_s == 4800
 
 
-def test_nobody_is_told_to_observe_more_often_than_nightly(campaign):
-    changes = changes_for(campaign, score(Layout(1.0, 1.0, 60.0, 1), 0.5, 10))
+def test_found_exposures_are_made_longer_than_the_targets_own(campaign, prospect):
+    (feed,) = campaign.line.feeds
+    auto = replace(feed, exposure_s=None, wanted_error=0.03, longest_s=3600.0)
+    campaign = replace(campaign, line=replace(campaign.line, feeds=(auto,)))
+    changes = changes_for(campaign, score(Layout(6.0, 1.0, 60.0, 1), 0.5, 10), prospect)
+    (deeper,) = [c for c in changes if c.words == "spectra of 80 min"]
+    assert deeper.campaign.line.feeds[0].exposure_s == 4 * prospect.line[0].exposure_s
+
+
+def test_nobody_is_told_to_observe_more_often_than_nightly(campaign, prospect):
+    changes = changes_for(campaign, score(Layout(1.0, 1.0, 60.0, 1), 0.5, 10), prospect)
     assert not any("every" in c.words for c in changes)
 
 
-def test_gains_are_differences_from_the_best_layout(campaign):
+def test_gains_are_differences_from_the_best_layout(campaign, prospect):
     base = score(LAYOUTS[0], 0.5, 10)
-    change = changes_for(campaign, base)[0]
+    change = changes_for(campaign, base, prospect)[0]
     tried = [(change, score(LAYOUTS[0], 0.7, 25)), (change, score(LAYOUTS[0], 0, 0, trials=0))]
     (help_,) = helps_of(base, tried)
     assert (help_.gain, help_.hours) == (pytest.approx(0.2), pytest.approx(15))

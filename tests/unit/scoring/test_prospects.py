@@ -175,6 +175,24 @@ def test_joined_telescopes_agree_after_the_fit(two_sites, forecast):
     assert np.std(together) < 0.3 * np.std(apart)
 
 
+@pytest.mark.parametrize(
+    ("time", "most"), [({"nights": 12}, 12), ({"hours": 6.0}, 9), ({"hours": 6.0,
+     "least_hours_per_night": 2.0}, 3), ({}, 10**6)],
+)  # fmt: skip
+def test_the_time_granted_ends_a_layout(campaign, forecast, time, most):
+    """A visit takes 1620 s with slew and read-out, and 780 s more of standard stars."""
+    telescopes = tuple(replace(t, time=TimeAllotment(**time)) for t in campaign.telescopes)
+    campaign = replace(with_line(campaign, standards_s=780.0), telescopes=telescopes)
+    prospect = prospect_for(campaign, forecast)
+    assert prospect.line[0].visit_s == 1620.0
+    assert prospect.line[0].most_visits == most
+    layout = Layout(2, 1, 120, 1)
+    usable = dict.fromkeys(("Big", "Small"), np.ones(181, dtype=bool))
+    _, (line,) = nights_used(prospect, layout, place_in(prospect, layout), usable)
+    assert line.sum() <= most
+    assert line.sum() > 30 or line.sum() == most
+
+
 def test_technical_trouble_takes_its_share_of_nights(campaign):
     shares = []
     for loss in (0.0, 0.3):
