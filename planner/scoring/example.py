@@ -51,6 +51,6 @@ def example_of(setting: Setting, prospect: Prospect, layout: Layout, table: Tria
     result = posterior = None
     if enough(curves):
         result = by_correlation(setting, prospect, curves, span, str(layout), trial)
-        posterior = by_likelihood(prospect, curves, span)
+        posterior = by_likelihood(setting, prospect, curves, span)
     verdict = REASONS[commonest] or "success"
     return Example(trial, draw.lag_obs_d, curves, result, posterior, verdict)

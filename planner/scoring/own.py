@@ -92,7 +92,7 @@ def recover_own(curves: Curves, rule: SuccessRule, seed: int, *, detrend: bool) 
     discrete = discrete_lag(discrete_correlation(*curves.columns(), lo, hi))
     chance = np.nan
     if np.isfinite(result.lag_d) and not posterior.reason:
-        peaks = _strangers(curves, belief, lags, seed, detrend=detrend)
+        peaks = _strangers(curves, belief, lags, result.centroid_d, seed, detrend=detrend)
         chance = float(np.mean(np.nan_to_num(peaks, nan=-1.0) >= result.r_max))
     overlap = posterior.lag_lo_d <= result.lag_hi_d and result.lag_lo_d <= posterior.lag_hi_d
     likely = passes_cuts(
@@ -117,9 +117,13 @@ def recover_own(curves: Curves, rule: SuccessRule, seed: int, *, detrend: bool) 
 
 
 def _strangers(
-    curves: Curves, belief: Belief, lags: Floats, seed: int, *, detrend: bool
+    curves: Curves, belief: Belief, lags: Floats, lag_d: float, seed: int, *, detrend: bool
 ) -> list[float]:
-    """Return the peak correlation of each of many unrelated lines with the continuum."""
+    """Return the peak correlation of each of many unrelated lines with the continuum.
+
+    They are as smooth as a line of that lag, and scatter as the line does: sharper or noisier ones
+    would correlate less, and make too much of the line's own peak.
+    """
     pair = make_pair(*curves.columns())
     sigma = float(pair.y1.std())
     nodes = walk_nodes(pair, sigma, belief.sigma_dex, belief.tau_d, belief.tau_dex)
@@ -129,8 +133,10 @@ def _strangers(
     chosen = rng.choice(len(nodes), STRANGERS, p=weights / weights.sum())
     peaks = []
     for node in chosen:
-        _, y = draw_pair(rng, pair.t2_d[:1], pair.t2_d, nodes[node][1].tau_d, 0.0, 0.0)
-        flux = rms * y + pair.e2 * rng.standard_normal(y.size)
+        response = belief.responses[rng.integers(len(belief.responses))]
+        width = float(response.widths_d(np.array([lag_d]))[0])
+        _, y = draw_pair(rng, pair.t2_d[:1], pair.t2_d, nodes[node][1].tau_d, 0.0, width)
+        flux = rms * (y - y.mean()) / y.std() + pair.e2 * rng.standard_normal(y.size)
         peaks.append(
             peak_correlation(
                 pair.t1_d, pair.y1, pair.e1, pair.t2_d, flux, pair.e2, lags, detrend=detrend

@@ -16,6 +16,7 @@ from planner.recovery import (
     Belief,
     LagPosterior,
     LagResult,
+    Response,
     is_right,
     lag_grid,
     lag_posterior,
@@ -61,6 +62,9 @@ CHANCE = REASONS.index("could be chance")
 
 FEWEST_EPOCHS = 5
 """Below this many epochs in a stream no lag is looked for (common practice, no source)."""
+
+WIDTHS = 4
+"""Widths of the response that the likelihood averages over."""
 
 SEARCH_SIGMAS = 2.5
 """Lags up to so many standard deviations of the prior above its median are looked for."""
@@ -127,14 +131,14 @@ def recover(
     if not enough(curves):
         return None
     if setting.simulation.method == "likelihood":
-        found = _of_posterior(by_likelihood(prospect, curves, span_d))
+        found = _of_posterior(by_likelihood(setting, prospect, curves, span_d))
     else:
         found = _of_result(by_correlation(setting, prospect, curves, span_d, label, trial, limit))
     if setting.success.agree and _passes(found, setting.success):
         if setting.simulation.method == "likelihood":
             other = _of_result(by_correlation(setting, prospect, curves, span_d, label, trial))
         else:
-            other = _of_posterior(by_likelihood(prospect, curves, span_d))
+            other = _of_posterior(by_likelihood(setting, prospect, curves, span_d))
         overlap = other.lag_lo_d <= found.lag_hi_d and found.lag_lo_d <= other.lag_hi_d
         found = found._replace(agrees=bool(overlap))
     return found
@@ -202,15 +206,22 @@ def peaks_of_strangers(
     ]
 
 
-def by_likelihood(prospect: Prospect, curves: Curves, span_d: float) -> LagPosterior:
+def by_likelihood(
+    setting: Setting, prospect: Prospect, curves: Curves, span_d: float
+) -> LagPosterior:
     """Recover the lag by the joint likelihood of both curves.
 
     All lags of the search are held equally likely beforehand; of the variability's timescale the
-    forecast and its scatter are known, amplitude and responsivity only from the curves.
+    forecast and its scatter are known, of the response's width the range, amplitude and
+    responsivity only from the curves.
     """
     forecast = prospect.forecast
+    least, most = setting.simulation.response_width
+    middles = least + (most - least) * (np.arange(WIDTHS) + 0.5) / WIDTHS
     belief = Belief(
-        tau_d=forecast.timescale_obs_d, tau_dex=max(forecast.timescale_scatter_dex, 0.1)
+        tau_d=forecast.timescale_obs_d,
+        tau_dex=max(forecast.timescale_scatter_dex, 0.1),
+        responses=tuple(Response("top_hat", float(width)) for width in middles),
     )
     return lag_posterior(*curves.columns(), *search_of(prospect, span_d), belief)
 
