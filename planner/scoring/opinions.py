@@ -18,7 +18,7 @@ from planner.scoring.store import Store
 
 __all__ = ["opinions_of"]
 
-OTHER_TRIALS = 40
+OTHER_TRIALS = 30
 """Trials of the other recovery method: the likelihood takes ten times as long."""
 
 

@@ -63,7 +63,7 @@ CHANCE = REASONS.index("could be chance")
 FEWEST_EPOCHS = 5
 """Below this many epochs in a stream no lag is looked for (common practice, no source)."""
 
-WIDTHS = 4
+WIDTHS = 3
 """Widths of the response that the likelihood averages over."""
 
 SEARCH_SIGMAS = 2.5

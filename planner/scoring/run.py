@@ -19,7 +19,7 @@ from planner.scoring.trials import Task, Used, run_strangers, run_trials
 
 __all__ = ["MODEL_VERSION", "Job", "Progress", "Used", "score_targets"]
 
-MODEL_VERSION = 5
+MODEL_VERSION = 6
 """Raised whenever the same inputs would give other outcomes; older kept results are then stale."""
 
 CHUNK = 10
