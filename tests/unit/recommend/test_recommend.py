@@ -68,7 +68,8 @@ def test_the_reason_names_what_trials_fail_of_and_what_helps_most():
     assert advice.decision == "risky"
     assert advice.why == (
         "no layout reaches the goal of 80%; this is the best; trials fail mostly of: "
-        "error too large (30%), weak correlation (10%); what would help most: seasons of 90 d (success 75%)"
+        "error too large (30%), weak correlation (10%); what would help most: seasons of 90 d "
+        "(success 75%)"
     )
     assert advice.helps[0].change == "seasons of 90 d"
 
