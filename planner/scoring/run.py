@@ -19,7 +19,7 @@ from planner.scoring.trials import Task, Used, run_strangers, run_trials
 
 __all__ = ["MODEL_VERSION", "Job", "Progress", "Used", "score_targets"]
 
-MODEL_VERSION = 6
+MODEL_VERSION = 7
 """Raised whenever the same inputs would give other outcomes; older kept results are then stale."""
 
 CHUNK = 10
@@ -96,7 +96,9 @@ def _limits(
 ) -> list[tuple[float, ...] | None]:
     """Return, for each layout of each job, the correlation that unrelated lines seldom exceed.
 
-    None for jobs whose rule does not ask for it, or whose method has odds of its own.
+    None for jobs whose rule does not ask for it, or whose method has odds of its own. The limit
+    stands one standard error of its own above the quantile asked for, as it is found from a finite
+    number of lines.
     """
     asked = [
         job
@@ -110,8 +112,10 @@ def _limits(
     for job in asked:
         parts = [part["r_unrelated"] for part in islice(done, len(_tasks(job)))]
         reached = np.nan_to_num(np.concatenate(parts, axis=1), nan=-1.0)
-        share = 1.0 - job.setting.success.false_alarm_below
-        limit = np.quantile(reached.reshape(len(reached), -1), share, axis=1)
+        reached = reached.reshape(len(reached), -1)
+        share = job.setting.success.false_alarm_below
+        error = (share * (1.0 - share) / reached.shape[1]) ** 0.5
+        limit = np.quantile(reached, 1.0 - max(share - error, 0.0), axis=1)
         limits[id(job)] = tuple(float(r) for r in limit)
     return [limits.get(id(job)) for job in jobs]
 
