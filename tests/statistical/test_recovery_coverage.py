@@ -7,7 +7,7 @@ import pytest
 from scipy.stats import binom
 
 spec = importlib.util.spec_from_file_location(
-    "coverage_in", Path(__file__).with_name("coverage.py")
+    "coverage_in", Path(__file__).with_name("recovery_cases.py")
 )
 coverage = importlib.util.module_from_spec(spec)
 spec.loader.exec_module(coverage)

@@ -11,7 +11,7 @@ from planner.model.campaign import Layout
 from planner.scoring import Job, setting_of
 
 spec = importlib.util.spec_from_file_location(
-    "coverage_to", Path(__file__).with_name("coverage.py")
+    "coverage_to", Path(__file__).with_name("recovery_cases.py")
 )
 coverage = importlib.util.module_from_spec(spec)
 spec.loader.exec_module(coverage)

@@ -1,7 +1,7 @@
 """False claims and coverage of both methods in five kinds of campaign.
 
-Run as ``python tests/statistical/coverage.py [TRIALS]`` to print the tables; 300 trials of each
-case take some minutes on two cores.
+Run as ``python tests/statistical/recovery_cases.py [TRIALS]`` to print the tables; 300 trials of
+each case take some minutes on two cores.
 """
 
 import sys
