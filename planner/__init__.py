@@ -40,6 +40,7 @@ def plan(path: str | Path, *, workers: int = 1, seed: int | None = None) -> Plan
     planner.base.errors.PlanError
         If no plan can be made.
     """
-    from planner.pipeline import make_plan, read
+    from planner.pipeline import make_plan, read, tools_with
 
-    return make_plan(read(Path(path), seed), workers=workers)
+    with tools_with(workers) as tools:
+        return make_plan(read(Path(path), seed), tools)

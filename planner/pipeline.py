@@ -8,7 +8,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Iterator, Sequence
+from contextlib import contextmanager
 from dataclasses import replace
 from pathlib import Path
 from typing import Any
@@ -19,12 +20,13 @@ from planner.agn import forecast, relation_names
 from planner.base.errors import PlanError
 from planner.base.provenance import file_hashes, planner_version, versions
 from planner.base.timescale import UT1_NOTE
+from planner.base.workers import Workers
 from planner.campaign import Reading, read_campaign
-from planner.model.campaign import Campaign
-from planner.model.plan import Help, Plan, Recommendation, SiteSky
-from planner.model.target import Forecast, Target
-from planner.model.trial import Prospect, Score, TrialTable
-from planner.recommend import Change, changes_for, choose, hardened, helps_of, recommend
+from planner.model.campaign import Campaign, Layout
+from planner.model.plan import Plan, Recommendation, SiteSky
+from planner.model.target import Forecast
+from planner.model.trial import Offer, Prospect, Score
+from planner.recommend import advise, hardened
 from planner.schedule import (
     Request,
     assign,
@@ -36,29 +38,36 @@ from planner.schedule import (
 )
 from planner.scoring import (
     Job,
-    Progress,
+    Raced,
     Store,
+    Tools,
     Used,
+    observe_sky,
+    offer_of,
     opinions_of,
     prospect_of,
-    score_targets,
-    scores_of,
+    race_targets,
+    raced_scores,
+    score_jobs,
+    score_of,
     setting_of,
     sky_of_trial,
     with_spectra,
 )
-from planner.sky import nights_at, windows_of
 
 __all__ = [
     "forecast_targets",
     "make_plan",
     "observe_sky",
+    "offers_of",
     "prospects_of",
+    "race_all",
     "read",
-    "recommend_all",
-    "schedule_all",
-    "score_all",
+    "tools_with",
 ]
+
+TRIALS_AFTER = 100
+"""Trials of what is tried with the recommended layouts alone, at most."""
 
 
 def read(path: Path, seed: int | None = None) -> Reading:
@@ -69,18 +78,24 @@ def read(path: Path, seed: int | None = None) -> Reading:
     return replace(reading, campaign=replace(reading.campaign, seed=seed))
 
 
+@contextmanager
+def tools_with(workers: int = 1, cluster: str | None = None) -> Iterator[Tools]:
+    """Give tools that keep nothing and say nothing."""
+    with Workers(workers, cluster) as processes:
+        yield Tools(processes, Store(None), lambda *_: None)
+
+
 def forecast_targets(campaign: Campaign) -> tuple[Forecast, ...]:
     """Return what each target is expected to do."""
-    return tuple(_forecast(campaign, target) for target in campaign.targets)
-
-
-def _forecast(campaign: Campaign, target: Target) -> Forecast:
-    return forecast(
-        target,
-        band=continuum_band(campaign),
-        relations=dict(campaign.relations),
-        cosmology=campaign.cosmology,
-        error_below=campaign.success.error_below,
+    return tuple(
+        forecast(
+            target,
+            band=continuum_band(campaign),
+            relations=dict(campaign.relations),
+            cosmology=campaign.cosmology,
+            error_below=campaign.success.error_below,
+        )
+        for target in campaign.targets
     )
 
 
@@ -90,134 +105,115 @@ def continuum_band(campaign: Campaign) -> str:
     return getattr(feeds[0].instrument, "band", "V") if feeds else "V"
 
 
-def observe_sky(campaign: Campaign) -> dict[str, SiteSky]:
-    """Return the nights of each site and the windows of all targets in them."""
-    ra = np.array([t.ra_deg for t in campaign.targets])
-    dec = np.array([t.dec_deg for t in campaign.targets])
-    limits = campaign.limits
-    no_moon = replace(limits, moon_separation_deg=180.0)
-    limited = {
-        campaign.site(feed.telescope).name
-        for stream in (campaign.line, campaign.continuum)
-        for feed in stream.feeds
-        if feed.moon_illumination_max < 1.0
-    }
-    skies = {}
-    for site in campaign.sites:
-        nights = nights_at(site, campaign.first_night, campaign.last_night, limits)
-        dark = (ra, dec) if site.name in limited else (ra[:0], dec[:0])
-        skies[site.name] = SiteSky(
-            nights,
-            windows_of(ra, dec, site, nights, limits),
-            windows_of(*dark, site, nights, no_moon),
-        )
-    return skies
+def offers_of(
+    campaign: Campaign, forecasts: Sequence[Forecast], skies: dict[str, SiteSky]
+) -> tuple[Offer, ...]:
+    """Return each target's layouts and what they can use; `forecasts` in the targets' order."""
+    return tuple(
+        offer_of(campaign, index, expected, skies) for index, expected in enumerate(forecasts)
+    )
 
 
 def prospects_of(
     campaign: Campaign, forecasts: Sequence[Forecast], skies: dict[str, SiteSky]
 ) -> tuple[Prospect, ...]:
-    """Return each target as its trials see it; `forecasts` in the order of the targets."""
+    """Return each target with exposures as they stand; `forecasts` in the targets' order."""
     return tuple(
         prospect_of(campaign, index, expected, skies) for index, expected in enumerate(forecasts)
     )
 
 
-def score_all(
-    campaign: Campaign,
-    prospects: Sequence[Prospect],
-    *,
-    workers: int,
-    store: Store,
-    progress: Progress,
-) -> tuple[tuple[TrialTable, ...], tuple[tuple[Score, ...], ...]]:
-    """Run the trials of every layout of every target; return them and each target's scores."""
-    setting, layouts = setting_of(campaign), campaign.layouts()
-    tables = score_targets(
-        [Job(setting, prospect, layouts) for prospect in prospects],
-        workers=workers,
-        store=store,
-        progress=progress,
-        label="trials",
-    )
-    scores = tuple(tuple(scores_of(p, t)) for p, t in zip(prospects, tables, strict=True))
-    return tuple(tables), scores
+def race_all(campaign: Campaign, offers: Sequence[Offer], tools: Tools) -> list[Raced]:
+    """Run trials until it is settled which layout to recommend for each target."""
+    return race_targets(setting_of(campaign), offers, tools)
 
 
-def recommend_all(
-    campaign: Campaign,
-    forecasts: Sequence[Forecast],
-    prospects: Sequence[Prospect],
-    tables: Sequence[TrialTable],
-    scores: Sequence[Sequence[Score]],
-    *,
-    workers: int,
-    store: Store,
-    progress: Progress,
-) -> tuple[Recommendation, ...]:
-    """Return a recommendation for each target; where the goal is missed, try what would help."""
-    rule = campaign.success
-    tried: list[tuple[int, Score, Change, Prospect]] = []
-    for index, of_target in enumerate(scores):
-        best, reached = choose(of_target, rule)
-        if best is not None and not reached:
-            for change in changes_for(campaign, best, prospects[index]):
-                alone = replace(change.campaign, targets=(campaign.targets[index],))
-                prospect = prospects_of(alone, [forecasts[index]], observe_sky(alone))[0]
-                tried.append((index, best, change, prospect))
-    changed = score_targets(
-        [Job(setting_of(c.campaign), p, (c.layout,)) for _, _, c, p in tried],
-        workers=workers,
-        store=store,
-        progress=progress,
-        label="what would help",
-    )
-    helps: dict[int, list[Help]] = {}
-    for (index, best, change, prospect), table in zip(tried, changed, strict=True):
-        helps.setdefault(index, []).extend(
-            helps_of(best, [(change, scores_of(prospect, table)[0])])
-        )
-    return tuple(
-        recommend(t.name, scores[i], tables[i], rule, helps.get(i, ()))
-        for i, t in enumerate(campaign.targets)
-    )
+def make_plan(reading: Reading, tools: Tools) -> Plan:
+    """Do the main job.
 
+    Parameters
+    ----------
+    reading : Reading
+        From `read`.
+    tools : Tools
+        Workers, the store of finished work, progress; the results do not depend on them.
 
-def schedule_all(
-    campaign: Campaign,
-    prospects: Sequence[Prospect],
-    recommendations: Sequence[Recommendation],
-) -> tuple[Request, ...]:
-    """Return what the targets that take part in the schedule ask of the telescopes."""
-    return requests_of(
-        campaign,
+    Raises
+    ------
+    PlanError
+        If no target can be observed at all.
+    """
+    campaign = reading.campaign
+    forecasts = forecast_targets(campaign)
+    skies = observe_sky(campaign)
+    offers = offers_of(campaign, forecasts, skies)
+    if not any(offer.plain.seasons for offer in offers):
+        raise PlanError(no_window(campaign))
+    raced = race_all(campaign, offers, tools)
+    advice = advise(campaign, forecasts, raced, tools)
+    prospects = tuple(_prospect(r, a) for r, a in zip(raced, advice, strict=True))
+    setting = setting_of(campaign)
+    trials = min(TRIALS_AFTER, campaign.simulation.trials)
+    opinions = opinions_of(
+        setting,
         [
-            (prospect, advice.score.layout)
-            for prospect, advice in zip(prospects, recommendations, strict=True)
-            if advice.scheduled and advice.score is not None
+            (p, a.score.layout, a.score.promise)
+            for p, a in zip(prospects, advice, strict=True)
+            if a.score
         ],
+        trials,
+        tools,
     )
+    advice = tuple(hardened(a, opinions, campaign.success) for a in advice)
+    requests = requests_of(campaign, _scheduled(prospects, advice))
+    visits, unplaced = planned(campaign, requests)
+    return Plan(
+        campaign=campaign,
+        forecasts=forecasts,
+        skies=skies,
+        prospects=prospects,
+        trials=tuple(r.table for r in raced),
+        scores=tuple(s for r in raced for s in raced_scores(r)),
+        recommendations=advice,
+        opinions=opinions,
+        visits=tuple(visits),
+        unplaced=tuple(unplaced),
+        time_spent=time_spent(campaign, visits, dark_hours(skies)),
+        hours_scheduled=hours_by_target(campaign, visits),
+        executed=execute(campaign, _scheduled(prospects, advice), requests, trials, tools),
+        run=run_record(reading),
+    )
+
+
+def _prospect(raced: Raced, advice: Recommendation) -> Prospect:
+    """Return the target as its recommended layout sees it."""
+    if advice.score is None:
+        return raced.offer.plain
+    return raced.offer.prospect(advice.score.layout)
+
+
+def _scheduled(
+    prospects: Sequence[Prospect], advice: Sequence[Recommendation]
+) -> list[tuple[Prospect, Layout]]:
+    """Return the targets that take part in the schedule, each with its layout."""
+    return [
+        (prospect, a.score.layout)
+        for prospect, a in zip(prospects, advice, strict=True)
+        if a.scheduled and a.score is not None
+    ]
 
 
 def execute(
     campaign: Campaign,
-    prospects: Sequence[Prospect],
-    recommendations: Sequence[Recommendation],
+    chosen: Sequence[tuple[Prospect, Layout]],
     requests: Sequence[Request],
-    *,
-    workers: int,
-    store: Store,
-    progress: Progress,
+    trials: int,
+    tools: Tools,
 ) -> dict[str, Score]:
     """Run the schedule of all targets under each trial's weather and score what is left of it."""
     setting = setting_of(campaign)
-    kept = [
-        (prospect, advice.score.layout)
-        for prospect, advice in zip(prospects, recommendations, strict=True)
-        if advice.scheduled and advice.score is not None
-    ]
-    used: dict[str, list[Used]] = {prospect.forecast.name: [] for prospect, _ in kept}
-    for trial in range(setting.simulation.trials):
+    used: dict[str, list[Used]] = {prospect.forecast.name: [] for prospect, _ in chosen}
+    for trial in range(trials):
         visits = assign(campaign, requests, sky_of_trial(setting, trial))
         nights = dict(
             zip(
@@ -226,99 +222,23 @@ def execute(
                 strict=True,
             )
         )
-        for prospect, _ in kept:
+        for prospect, _ in chosen:
             name = prospect.forecast.name
             imaging, line = (
                 tuple(nights[name, stream.kind, i] for i in range(len(stream.feeds)))
                 for stream in (campaign.continuum, campaign.line)
             )
             used[name].append(with_spectra(prospect, imaging, line))
-        progress("weather over the schedule", trial + 1, setting.simulation.trials)
+        tools.progress("weather over the schedule", trial + 1, trials)
     jobs = [
-        Job(setting, prospect, (layout,), tuple(used[prospect.forecast.name]))
-        for prospect, layout in kept
+        Job(setting, prospect, layout, trials, tuple(used[prospect.forecast.name]))
+        for prospect, layout in chosen
     ]
-    tables = score_targets(
-        jobs, workers=workers, store=store, progress=progress, label="schedule under weather"
-    )
+    tables = score_jobs(jobs, tools, "schedule under weather")
     return {
-        job.prospect.forecast.name: scores_of(job.prospect, table)[0]
+        job.prospect.forecast.name: score_of(job.prospect, table)
         for job, table in zip(jobs, tables, strict=True)
     }
-
-
-def make_plan(
-    reading: Reading,
-    *,
-    workers: int = 1,
-    store: Store | None = None,
-    progress: Progress | None = None,
-) -> Plan:
-    """Do the main job.
-
-    Parameters
-    ----------
-    reading : Reading
-        From `read`.
-    workers : int
-        Processes; the results do not depend on it.
-    store : Store, optional
-        Keeps finished trials, so that an interrupted run goes on.
-    progress : callable, optional
-
-    Raises
-    ------
-    PlanError
-        If no target can be observed at all.
-    """
-    campaign = reading.campaign
-    store = store or Store(None)
-    progress = progress or (lambda _what, _done, _all: None)
-    forecasts = forecast_targets(campaign)
-    skies = observe_sky(campaign)
-    prospects = prospects_of(campaign, forecasts, skies)
-    if not any(p.seasons for p in prospects):
-        raise PlanError(no_window(campaign))
-    tables, scores = score_all(campaign, prospects, workers=workers, store=store, progress=progress)
-    advice = recommend_all(
-        campaign,
-        forecasts,
-        prospects,
-        tables,
-        scores,
-        workers=workers,
-        store=store,
-        progress=progress,
-    )
-    opinions = opinions_of(
-        setting_of(campaign),
-        [(p, a.score.layout) for p, a in zip(prospects, advice, strict=True) if a.score],
-        workers=workers,
-        store=store,
-        progress=progress,
-    )
-    advice = tuple(hardened(a, opinions, campaign.success) for a in advice)
-    requests = schedule_all(campaign, prospects, advice)
-    visits, unplaced = planned(campaign, requests)
-    executed = execute(
-        campaign, prospects, advice, requests, workers=workers, store=store, progress=progress
-    )
-    return Plan(
-        campaign=campaign,
-        forecasts=forecasts,
-        skies=skies,
-        prospects=prospects,
-        trials=tables,
-        scores=tuple(s for of_target in scores for s in of_target),
-        recommendations=advice,
-        opinions=opinions,
-        visits=tuple(visits),
-        unplaced=tuple(unplaced),
-        time_spent=time_spent(campaign, visits, dark_hours(skies)),
-        hours_scheduled=hours_by_target(campaign, visits),
-        executed=executed,
-        run=run_record(reading),
-    )
 
 
 def dark_hours(skies: dict[str, SiteSky]) -> dict[str, float]:

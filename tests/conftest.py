@@ -104,6 +104,7 @@ def campaign(site):
         limits=Limits(2.0, -18.0, 30.0),
         season_lengths_d=(60.0, 120.0),
         seasons=(1,),
+        season_shifts_d=(0.0,),
         success=SuccessRule(0.8, 0.3, 0.3, 0.5, 1.0),
         simulation=Simulation(8, 20, 0.8, (0.5, 1.5)),
         cosmology=Cosmology(),

@@ -74,6 +74,7 @@ def build(
         limits=_limits(_sound(parts.limits)),
         season_lengths_d=choices.season_lengths,
         seasons=choices.seasons,
+        season_shifts_d=_sound(parts.candidates).season_shifts,
         success=success_rule(_sound(parts.success), choices),
         simulation=_simulation(_sound(parts.simulation)),
         cosmology=Cosmology(cosmology.hubble, cosmology.omega_matter),

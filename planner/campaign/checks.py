@@ -93,17 +93,18 @@ def _check_weather(sheet: Sheet, parts: Parts) -> None:
 def _check_candidates(sheet: Sheet, parts: Parts, choices: Choices) -> None:
     programme = parts.programme
     nights = programme.last_night - programme.first_night + 1 if programme else 0
-    shortest, longest = choices.season_lengths[0], choices.season_lengths[-1]
+    lengths = choices.season_lengths or (1.0,)
+    shortest, longest = lengths[0], lengths[-1]
     if nights > 0 and longest > nights:
         found = f"a season of {longest:g} d in a campaign of {nights} nights"
         sheet.fault(("season_lengths",), found, "seasons no longer than the campaign")
-    most = choices.seasons[-1]
+    most = max(choices.seasons, default=1)
     # The first season may lie at the end of a target's visibility, the last at its beginning.
     if most > 1 and 0 < nights < (most - 2) * _YEAR_D + 2 * shortest:
         found = f"{most} seasons of {shortest:g} d in a campaign of {nights} nights"
         sheet.fault(("seasons",), found, "fewer seasons or a later last_night")
     for kind, cadences in choices.cadences.items():
-        if cadences[-1] > shortest:
+        if choices.season_lengths and max(cadences, default=1.0) > shortest:
             found = f"a cadence of {cadences[-1]:g} nights in a season of {shortest:g} d"
             path = ("streams", kind, "cadence")
             sheet.fault(path, found, "cadences no longer than the shortest season")

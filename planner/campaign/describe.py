@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from dataclasses import asdict
 from datetime import date
 from typing import Any
@@ -33,7 +33,7 @@ def describe(reading: Reading) -> str:
         (
             f"Campaign {campaign.name}",
             _programme(campaign),
-            ("campaign", "season_lengths", "seasons", "time"),
+            ("campaign", "season_lengths", "seasons", "season_shifts", "time"),
         ),
         *((f"Site {s.name}", _site(s), ("site", f"sites.{s.name}")) for s in campaign.sites),
         *(
@@ -81,9 +81,14 @@ def _programme(campaign: Campaign) -> Iterator[str]:
     nights = campaign.last_night - campaign.first_night + 1
     yield f"nights: {_date(campaign.first_night)} to {_date(campaign.last_night)} ({nights})"
     yield f"seed: {campaign.seed}"
-    yield f"season lengths: {', '.join(f'{d:g} d' for d in campaign.season_lengths_d)}"
-    yield f"numbers of seasons: {', '.join(map(str, campaign.seasons))}"
-    yield f"layouts to compare: {len(campaign.layouts())}"
+    yield f"season lengths: {_candidates(campaign.season_lengths_d, ' d')}"
+    yield f"numbers of seasons: {_candidates(campaign.seasons)}"
+    if campaign.season_shifts_d != (0.0,):
+        yield f"seasons start later by: {_candidates(campaign.season_shifts_d, ' d')}"
+
+
+def _candidates(values: Sequence[float], unit: str = "") -> str:
+    return ", ".join(f"{v:g}{unit}" for v in values) or "generated for each target"
 
 
 def _site(site: Site) -> Iterator[str]:
@@ -123,7 +128,9 @@ def _time_limits(time: TimeAllotment) -> str:
 
 
 def _stream(stream: Stream) -> Iterator[str]:
-    yield f"candidate cadences: {', '.join(f'{c:g} d' for c in stream.cadence_nights)}"
+    yield f"candidate cadences: {_candidates(stream.cadence_nights, ' d')}"
+    if stream.deepen != (1.0,):
+        yield f"candidate exposures: {_candidates(stream.deepen, ' times')} those below"
     if stream.in_spectra:
         yield "measured in the line's spectra, whose scale error it shares"
     for feed in stream.feeds:

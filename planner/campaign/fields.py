@@ -127,6 +127,20 @@ def listed(expected: str) -> BeforeValidator:
     return BeforeValidator(as_tuple)
 
 
+AUTO = "auto"
+"""Left to the planner, which finds a value for each target."""
+
+
+def auto_or_listed(expected: str) -> BeforeValidator:
+    """Return a validator like `listed` that takes ``auto`` as an empty tuple."""
+    as_tuple = listed(f"{expected}, or {AUTO}").func
+
+    def take(value: object) -> Any:
+        return () if value == AUTO else as_tuple(value)  # type: ignore[call-arg]
+
+    return BeforeValidator(take)
+
+
 def _once(values: tuple[Any, ...]) -> tuple[Any, ...]:
     if len(set(values)) < len(values):
         raise ValueError("a value is given twice; expected each value once")

@@ -66,6 +66,7 @@ class Parts:
             *((f"telescopes.{t.name}", t) for t in self.known_telescopes()),
             ("streams", self.streams),
             ("limits", self.limits),
+            ("", self.candidates),
             ("success", self.success),
             ("simulation", self.simulation),
             ("cosmology", self.cosmology),

@@ -11,6 +11,7 @@ from typing import Annotated, Any, Generic, TypeVar
 from pydantic import AfterValidator, BeforeValidator, Field
 
 from planner.campaign.fields import (
+    AUTO,
     Elevation,
     Latitude,
     Longitude,
@@ -18,6 +19,7 @@ from planner.campaign.fields import (
     Night,
     Percent,
     TimeZone,
+    auto_or_listed,
     choice,
     counted,
     listed,
@@ -39,15 +41,18 @@ BANDS = ("u", "g", "r", "i", "z", "B", "V", "R")
 LINES = ("Hbeta", "Halpha", "MgII", "CIV")
 TOP_KEYS = (
     "campaign", "targets", "site", "sites", "telescopes", "streams", "limits", "season_lengths",
-    "seasons", "time", "success", "simulation", "cosmology", "relations",
+    "seasons", "season_shifts", "time", "success", "simulation", "cosmology", "relations",
 )  # fmt: skip
 
+GENERATED = "generated for each target from its lag and visible season"
 _PAUSE = "a time from 0 s to 12 h, such as 2 min"
 _SEASON = "a length from 1 to 366 d, such as 120 d"
+_SHIFT = "nights by which seasons start later, from -366 to 366 d, such as 30 d"
 _SHARE = "a percentage from 0 to 99, such as 20 %"
 
 Pause = Annotated[float, quantity("s", _PAUSE, lambda v: 0 <= v <= 43200)]
 SeasonLength = Annotated[float, quantity("d", _SEASON, lambda v: 1 <= v <= 366)]
+SeasonShift = Annotated[float, quantity("d", _SHIFT, lambda v: -366 <= v <= 366)]
 Positive = Annotated[float, quantity("", "a percentage above 0, up to 100", lambda v: 0 < v <= 1)]
 Airmass = Annotated[float, number("an airmass from 1 to 10, such as 2.0", lambda v: 1 <= v <= 10)]
 BRIGHTNESS = "a magnitude from 5 to 30, such as 16.2"
@@ -218,15 +223,15 @@ class LimitsSection(Section):
 class Candidates(Section):
     """The candidate lists at the top level."""
 
-    season_lengths: Annotated[tuple[SeasonLength, ...], listed(_SEASON), sorted_once] | None = None
-    seasons: (
-        Annotated[
-            tuple[Annotated[int, counted("a whole number such as 2", 1, 20)], ...],
-            listed("whole numbers such as [1, 2]"),
-            sorted_once,
-        ]
-        | None
-    ) = None
+    season_lengths: Annotated[tuple[SeasonLength, ...], auto_or_listed(_SEASON), sorted_once] = (
+        usual(AUTO, GENERATED)
+    )
+    seasons: Annotated[
+        tuple[Annotated[int, counted("a whole number such as 2", 1, 20)], ...],
+        auto_or_listed("whole numbers such as [1, 2]"),
+        sorted_once,
+    ] = usual(AUTO, GENERATED)
+    season_shifts: Annotated[tuple[SeasonShift, ...], listed(_SHIFT), sorted_once] = usual(["0 d"])
 
 
 class SuccessSection(Section):

@@ -1,8 +1,4 @@
-"""What the observer left open and depends on the rest: which telescope, which candidates.
-
-Usual cadences and seasons are common practice, no source. They are only starting points that make
-the smallest file work; an observer's own numbers should replace them.
-"""
+"""What the observer left open and depends on the rest: which telescope, which candidates."""
 
 from __future__ import annotations
 
@@ -18,11 +14,6 @@ __all__ = ["KINDS", "Choices", "settle", "stream_of"]
 KINDS = ("continuum", "line")
 """The two streams."""
 
-_CADENCES = {"continuum": (1.0, 2.0, 4.0), "line": (3.0, 5.0, 8.0, 12.0)}
-_SEASON_LENGTHS_D = (60.0, 90.0, 120.0, 180.0)
-_SEASONS = (1, 2)
-_YEAR_D = 365.25
-
 
 @dataclass
 class Choices:
@@ -33,6 +24,7 @@ class Choices:
     telescope_of: dict[str, TelescopeSection] = field(default_factory=dict)
     """Key of a stream, or of one of its ``also``, to telescope."""
     cadences: dict[str, tuple[float, ...]] = field(default_factory=dict)
+    """Candidates; empty here and below: generated for each target."""
     season_lengths: tuple[float, ...] = ()
     seasons: tuple[int, ...] = ()
     defaults: list[Default] = field(default_factory=list)
@@ -108,30 +100,13 @@ def _only_spectra(parts: Parts) -> bool:
 
 
 def _settle_candidates(parts: Parts, choices: Choices) -> None:
-    """Take the usual candidates that fit the campaign, where none are given."""
-    given, programme = parts.candidates, parts.programme
-    nights = programme.last_night - programme.first_night + 1 if programme else 7305
-    lengths = given.season_lengths if given else _SEASON_LENGTHS_D
-    if lengths is None:
-        lengths = tuple(d for d in _SEASON_LENGTHS_D if d <= nights) or (float(max(nights, 1)),)
-        choices.take("season_lengths", _listed(lengths, "d"))
-    seasons = given.seasons if given else _SEASONS
-    if seasons is None:
-        seasons = tuple(n for n in _SEASONS if (n - 1) * _YEAR_D + lengths[0] <= nights) or (1,)
-        choices.take("seasons", f"[{', '.join(map(str, seasons))}]")
-    choices.season_lengths, choices.seasons = lengths, seasons
+    """Take the candidates; those that are empty are generated for each target."""
+    given = parts.candidates
+    choices.season_lengths = given.season_lengths if given else ()
+    choices.seasons = given.seasons if given else ()
     for kind in ("line", "continuum"):
         section = stream_of(parts, kind)
         if section is None:
             continue
-        cadences = section.cadence
-        if kind == "continuum" and _only_spectra(parts):
-            cadences = choices.cadences["line"]
-        if cadences is None:
-            cadences = tuple(c for c in _CADENCES[kind] if c <= lengths[0]) or (1.0,)
-            choices.take(f"streams.{kind}.cadence", _listed(cadences, "d"))
-        choices.cadences[kind] = cadences
-
-
-def _listed(values: tuple[float, ...], unit: str) -> str:
-    return f"[{', '.join(f'{v:g} {unit}' for v in values)}]"
+        only_spectra = kind == "continuum" and _only_spectra(parts)
+        choices.cadences[kind] = choices.cadences["line"] if only_spectra else section.cadence

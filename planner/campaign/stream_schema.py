@@ -8,7 +8,9 @@ from pydantic import Field
 
 from planner.base import quantities
 from planner.campaign.fields import (
+    AUTO,
     Name,
+    auto_or_listed,
     choice,
     counted,
     listed,
@@ -17,7 +19,15 @@ from planner.campaign.fields import (
     read_text,
     sorted_once,
 )
-from planner.campaign.schema import BRIGHTNESS, Airmass, Band, MagnitudeValue, Pause, TimeSection
+from planner.campaign.schema import (
+    BRIGHTNESS,
+    GENERATED,
+    Airmass,
+    Band,
+    MagnitudeValue,
+    Pause,
+    TimeSection,
+)
 from planner.campaign.sections import Section, needed, usual
 
 __all__ = [
@@ -42,11 +52,12 @@ WANTED = {"continuum": "3 %", "line": "5 %"}
 """Calibration error of images, and flux errors to reach, where none are given (common practice, no
 source)."""
 
-AUTO = "auto"
 
 Exposure = Annotated[float, quantity("s", _TIME, lambda v: 1 <= v <= 43200)]
 Cadence = Annotated[float, quantity("d", _CADENCE, lambda v: 1 <= v <= 400)]
-Cadences = Annotated[tuple[Cadence, ...], listed(_CADENCE), sorted_once]
+Cadences = Annotated[tuple[Cadence, ...], auto_or_listed(_CADENCE), sorted_once]
+_FACTOR = "how many times `exposure`, from 0.05 to 50, such as [1, 2]"
+Factor = Annotated[float, number(_FACTOR, lambda v: 0.05 <= v <= 50)]
 Share = Annotated[float, quantity("", _SHARE, lambda v: 0 <= v <= 0.99)]
 Throughput = Annotated[float, quantity("", _THROUGHPUT, lambda v: 0 < v <= 1)]
 Wanted = Annotated[
@@ -167,7 +178,8 @@ class FeedSection(Section):
 class StreamSection(FeedSection):
     """What both streams may say."""
 
-    cadence: Cadences | None = None
+    cadence: Cadences = usual(AUTO, GENERATED)
+    deepen: Annotated[tuple[Factor, ...], listed(_FACTOR), sorted_once] = usual(["1"])
     time: TimeSection | None = None
 
 

@@ -58,6 +58,7 @@ def stream_record(parts: Parts, choices: Choices, kind: str, time: TimeAllotment
         in_spectra=in_spectra,
         time=time,
         measurement=_measurement(section) if isinstance(section, LineSection) else None,
+        deepen=section.deepen if feeds else (1.0,),
     )
 
 

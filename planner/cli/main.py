@@ -156,6 +156,11 @@ def _shared() -> _Parser:
         default=os.cpu_count() or 1,
         help="processes to use (default: all cores; the results do not depend on it)",
     )
+    shared.add_argument(
+        "--cluster",
+        metavar="ADDRESS",
+        help="scheduler of a running Dask cluster to work on instead, such as tcp://head:8786",
+    )
     shared.add_argument("--seed", type=_seed, metavar="N", help="random seed instead of the file's")
     shared.add_argument("--json", action="store_true", help="print the result as one JSON object")
     shared.add_argument("--quiet", action="store_true", help="no progress on stderr")

@@ -7,14 +7,25 @@ from pathlib import Path
 from typing import TYPE_CHECKING
 
 from planner.base.errors import InputError
-from planner.cli.shared import CAUTION, claim, give, read, say, say_json, store_in
-from planner.cli.terminal import ProgressLine, table_text
+from planner.cli.shared import (
+    CAUTION,
+    LAYOUT_HEADER,
+    claim,
+    give,
+    layout_cells,
+    read,
+    say,
+    say_json,
+    working,
+)
+from planner.cli.terminal import table_text
 
 if TYPE_CHECKING:
     from collections.abc import Sequence
 
     from planner.model.campaign import Campaign
-    from planner.model.trial import Prospect
+    from planner.model.trial import Offer
+    from planner.scoring import Tools
 
 __all__ = ["compare", "plan", "schedule", "score"]
 
@@ -22,38 +33,34 @@ __all__ = ["compare", "plan", "schedule", "score"]
 def score(options: Namespace) -> int:
     """Print every layout's chance of success for every target."""
     from planner import export, pipeline
+    from planner.scoring import observe_sky, raced_scores
 
     reading = read(options)
     campaign = reading.campaign
     folder = claim(options, reading)
-    prospects = pipeline.prospects_of(
-        campaign, pipeline.forecast_targets(campaign), pipeline.observe_sky(campaign)
+    offers = pipeline.offers_of(
+        campaign, pipeline.forecast_targets(campaign), observe_sky(campaign)
     )
-    if options.forecast:
-        return _forecast(options, campaign, prospects, folder)
-    _, scores = pipeline.score_all(
-        campaign,
-        prospects,
-        workers=options.workers,
-        store=store_in(folder),
-        progress=ProgressLine(quiet=options.quiet),
-    )
-    flat = [s for of_target in scores for s in of_target]
+    with working(options, folder) as tools:
+        if options.forecast:
+            return _forecast(options, campaign, offers, tools, folder)
+        raced = pipeline.race_all(campaign, offers, tools)
+    flat = [s for r in raced for s in raced_scores(r)]
     if give(options, folder, {"scores": export.scores_table(flat)}):
         return 0
     rows = [
         [
             s.target,
-            f"{s.layout.cadence_line_nights:g}",
-            f"{s.layout.cadence_continuum_nights:g}",
-            f"{s.layout.seasons} × {s.layout.season_length_d:g} d",
+            *layout_cells(s.layout),
             f"{s.epochs_line:.0f}",
+            f"{s.hours:.0f}",
+            f"{s.promise:.0%}",
             *(
                 [
                     f"{s.success:.0%}",
                     f"{s.success_lo:.0%}–{s.success_hi:.0%}",
                     f"{s.false_claims:.0%}",
-                    f"{s.hours:.0f}",
+                    str(s.trials),
                 ]
                 if s.trials
                 else ["–"] * 4
@@ -62,65 +69,48 @@ def score(options: Namespace) -> int:
         ]
         for s in flat
     ]
-    say(
-        table_text(
-            [
-                "target",
-                "nights per spectrum",
-                "per image",
-                "seasons",
-                "spectra",
-                "success",
-                "90 % bounds",
-                "wrong",
-                "hours",
-                "note",
-            ],
-            rows,
-        )
-    )
+    header = [
+        "target",
+        *LAYOUT_HEADER,
+        "spectra",
+        "hours",
+        "forecast",
+        "success",
+        "90 % bounds",
+        "wrong",
+        "trials",
+        "note",
+    ]
+    say(table_text(header, rows))
     return 0
 
 
 def _forecast(
-    options: Namespace, campaign: Campaign, prospects: Sequence[Prospect], folder: Path | None
+    options: Namespace,
+    campaign: Campaign,
+    offers: Sequence[Offer],
+    tools: Tools,
+    folder: Path | None,
 ) -> int:
     """Print the layouts of each target ranked by their information forecast."""
     from planner import export
-    from planner.scoring import forecast_layouts, setting_of
+    from planner.scoring import forecast_offers, setting_of
 
-    forecasts = forecast_layouts(
-        setting_of(campaign),
-        prospects,
-        campaign.layouts(),
-        workers=options.workers,
-        progress=ProgressLine(quiet=options.quiet),
-    )
-    if give(options, folder, {"forecast": export.forecast_table(forecasts)}):
+    by_target = forecast_offers(setting_of(campaign), offers, tools)
+    ranked = [f for mine in by_target for f in sorted(mine, key=lambda f: (-f.success, f.hours))]
+    if give(options, folder, {"forecast": export.forecast_table(ranked)}):
         return 0
-    say(
-        table_text(
-            [
-                "target",
-                "nights per spectrum",
-                "per image",
-                "seasons",
-                "expected success",
-                "least error",
-            ],
-            [
-                [
-                    f.target,
-                    f"{f.layout.cadence_line_nights:g}",
-                    f"{f.layout.cadence_continuum_nights:g}",
-                    f"{f.layout.seasons} × {f.layout.season_length_d:g} d",
-                    f"{f.success:.0%}",
-                    f"{f.error:.0%}" if f.error < 10 else "–",
-                ]
-                for f in forecasts
-            ],
-        )
-    )
+    rows = [
+        [
+            f.target,
+            *layout_cells(f.layout),
+            f"{f.success:.0%}",
+            f"{f.error:.0%}" if f.error < 10 else "–",
+            f"{f.hours:.0f}",
+        ]
+        for f in ranked
+    ]
+    say(table_text(["target", *LAYOUT_HEADER, "expected success", "least error", "hours"], rows))
     say(
         "\nExpected success of a likelihood recovery that knows variability and response; trials "
         "fall short of it."
@@ -134,12 +124,8 @@ def schedule(options: Namespace) -> int:
 
     reading = read(options)
     folder = claim(options, reading)
-    made = pipeline.make_plan(
-        reading,
-        workers=options.workers,
-        store=store_in(folder),
-        progress=ProgressLine(quiet=options.quiet),
-    )
+    with working(options, folder) as tools:
+        made = pipeline.make_plan(reading, tools)
     table = export.schedule_table(made.campaign, made.visits)
     if folder is not None:
         export.write_csv(table, folder / "schedule.csv")
@@ -176,17 +162,9 @@ def plan(options: Namespace) -> int:
         options.out = Path(f"{options.file.stem}-plan")
     folder = claim(options, reading)
     assert folder is not None
-    store = store_in(folder)
-    try:
-        made = pipeline.make_plan(
-            reading,
-            workers=options.workers,
-            store=store,
-            progress=ProgressLine(quiet=options.quiet),
-        )
+    with working(options, folder) as tools:
+        made = pipeline.make_plan(reading, tools)
         write_plan(made, reading, folder)
-    finally:
-        store.close()
     table = export.recommendation_table(made)
     if options.json:
         say_json({"folder": str(folder), "recommendation": export.as_rows(table)})
@@ -201,9 +179,7 @@ def plan(options: Namespace) -> int:
             [
                 r.target,
                 r.decision,
-                f"{s.layout.cadence_line_nights:g}",
-                f"{s.layout.cadence_continuum_nights:g}",
-                f"{s.layout.seasons} × {s.layout.season_length_d:g} d",
+                *layout_cells(s.layout),
                 f"{s.success:.0%}",
                 f"{s.success_lo:.0%}–{s.success_hi:.0%}",
                 "–" if kept is None else f"{kept.success:.0%}",
@@ -215,9 +191,7 @@ def plan(options: Namespace) -> int:
             [
                 "target",
                 "decision",
-                "nights per spectrum",
-                "per image",
-                "seasons",
+                *LAYOUT_HEADER,
                 "success",
                 "90 % bounds",
                 "in the schedule",
@@ -244,23 +218,21 @@ def compare(options: Namespace) -> int:
     """Print scenarios side by side."""
     from planner import pipeline
     from planner.compare import Scenario, compare_scenarios
+    from planner.recommend import advise_without_help
+    from planner.scoring import observe_sky
 
     if len(options.files) < 2:
         raise InputError("compare: found one file; expected two or more campaign files")
     readings = [pipeline.read(path, options.seed) for path in options.files]
     scenarios = []
-    for path, reading in zip(options.files, readings, strict=True):
-        campaign = reading.campaign
-        forecasts = pipeline.forecast_targets(campaign)
-        prospects = pipeline.prospects_of(campaign, forecasts, pipeline.observe_sky(campaign))
-        work = {
-            "workers": options.workers,
-            "store": store_in(None),
-            "progress": ProgressLine(quiet=options.quiet),
-        }
-        tables, scores = pipeline.score_all(campaign, prospects, **work)
-        advice = pipeline.recommend_all(campaign, forecasts, prospects, tables, scores, **work)
-        scenarios.append(Scenario(path.stem, tables, advice))
+    with working(options, None) as tools:
+        for path, reading in zip(options.files, readings, strict=True):
+            campaign = reading.campaign
+            forecasts = pipeline.forecast_targets(campaign)
+            offers = pipeline.offers_of(campaign, forecasts, observe_sky(campaign))
+            raced = pipeline.race_all(campaign, offers, tools)
+            advice = tuple(advise_without_help(campaign, raced))
+            scenarios.append(Scenario(path.stem, tuple(r.table for r in raced), advice))
     results = compare_scenarios(scenarios)
     if options.json:
         from dataclasses import asdict

@@ -5,6 +5,8 @@ from __future__ import annotations
 import json
 import sys
 from argparse import Namespace
+from collections.abc import Iterator
+from contextlib import contextmanager
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
@@ -14,9 +16,20 @@ if TYPE_CHECKING:
     from astropy.table import Table
 
     from planner.campaign import Reading
-    from planner.scoring import Store
+    from planner.model.campaign import Layout
+    from planner.scoring import Tools
 
-__all__ = ["CAUTION", "claim", "give", "read", "say", "say_json", "store_in"]
+__all__ = [
+    "CAUTION",
+    "LAYOUT_HEADER",
+    "claim",
+    "give",
+    "layout_cells",
+    "read",
+    "say",
+    "say_json",
+    "working",
+]
 
 CAUTION = (
     "A plan is no permission: the observatory's own limits, sun avoidance, safety rules "
@@ -57,11 +70,38 @@ def claim(options: Namespace, reading: Reading) -> Path | None:
     return Path(options.out)
 
 
-def store_in(folder: Path | None) -> Store:
-    """Return the store of finished trials; without a folder nothing is kept."""
-    from planner.scoring import Store
+@contextmanager
+def working(options: Namespace, folder: Path | None) -> Iterator[Tools]:
+    """Give what long work is done with; without a folder nothing is kept."""
+    from planner.base.workers import Workers
+    from planner.cli.terminal import ProgressLine
+    from planner.scoring import Store, Tools
 
-    return Store(None if folder is None else folder / WORK_FILE)
+    with (
+        ProgressLine(quiet=options.quiet) as progress,
+        Workers(options.workers, options.cluster) as workers,
+    ):
+        store = Store(None if folder is None else folder / WORK_FILE, warn=progress.say)
+        try:
+            yield Tools(workers, store, progress)
+        finally:
+            store.close()
+
+
+LAYOUT_HEADER = ["nights per spectrum", "per image", "seasons"]
+
+
+def layout_cells(layout: Layout) -> list[str]:
+    """Return a layout as cells under `LAYOUT_HEADER`."""
+    seasons = f"{layout.seasons} × {layout.season_length_d:g} d"
+    if layout.shift_d:
+        seasons += f" {layout.shift_d:+g} d"
+    factors = layout.exposures
+    return [
+        f"{layout.cadence_line_nights:g}" + (f" × {factors[0]:g}" if factors[0] != 1 else ""),
+        f"{layout.cadence_continuum_nights:g}" + (f" × {factors[1]:g}" if factors[1] != 1 else ""),
+        seasons,
+    ]
 
 
 def give(options: Namespace, folder: Path | None, tables: dict[str, Table]) -> bool:

@@ -54,8 +54,8 @@ class ScenarioResult:
 def compare_scenarios(scenarios: Sequence[Scenario]) -> tuple[ScenarioResult, ...]:
     """Return each scenario's cost and yield, paired with the first.
 
-    Targets are taken at their recommended layouts, each with the telescopes to itself. Scenarios
-    with other numbers of trials are paired over the trials they share.
+    Targets are taken at their recommended layouts, each with the telescopes to itself, over the
+    trials that all of them, and the paired scenarios, have had.
     """
     right = [_per_trial(s, "success") for s in scenarios]
     wrong = [_per_trial(s, "wrong") for s in scenarios]
@@ -87,11 +87,14 @@ def compare_scenarios(scenarios: Sequence[Scenario]) -> tuple[ScenarioResult, ..
 
 def _per_trial(scenario: Scenario, what: str) -> NDArray[np.float64]:
     """Return the number of right (or wrong) claims in each trial, over scheduled targets."""
-    trials = scenario.tables[0].success.shape[1]
-    total = np.zeros(trials)
-    for table, advice in zip(scenario.tables, scenario.recommendations, strict=True):
-        if advice.scheduled and advice.score is not None:
-            at = table.layouts.index(advice.score.layout)
-            success = table.success[at]
-            total += success if what == "success" else table.claim[at] & ~success
+    mine = [
+        (table, table.layouts.index(advice.score.layout))
+        for table, advice in zip(scenario.tables, scenario.recommendations, strict=True)
+        if advice.scheduled and advice.score is not None
+    ]
+    shared = min((int(table.trials[at]) for table, at in mine), default=1)
+    total = np.zeros(shared)
+    for table, at in mine:
+        success = table.success[at, :shared]
+        total += success if what == "success" else table.claim[at, :shared] & ~success
     return total

@@ -10,7 +10,7 @@ from astropy.table import Table
 
 from planner.base.timescale import utc_text
 from planner.export.columns import dates, rounded, significant, table_of
-from planner.model.campaign import Campaign
+from planner.model.campaign import Campaign, Layout
 from planner.model.plan import Plan, SiteSky, Visit
 from planner.model.target import Forecast
 from planner.model.trial import Prospect, Score
@@ -147,63 +147,56 @@ def seasons_table(campaign: Campaign, prospects: Sequence[Prospect]) -> Table:
     )
 
 
+LAYOUT_COLUMNS = (
+    ("cadence_line", "cadence_line_nights", "d", "between spectra"),
+    ("cadence_continuum", "cadence_continuum_nights", "d", "between continuum epochs"),
+    ("season_length", "season_length_d", "d", "of each season"),
+    ("seasons", "seasons", None, "number of seasons"),
+    ("shift", "shift_d", "d", "seasons start later than the best stretch"),
+    ("exposure_line", "exposure_line", None, "exposure over that of the stream"),
+    ("exposure_continuum", "exposure_continuum", None, "exposure over that of the stream"),
+)
+
+
+def layout_columns(layouts: Sequence[Layout | None]) -> list[tuple[str, Any, str | None, str]]:
+    """Return the columns that say what a layout is; NaN where there is none."""
+    return [
+        (
+            column,
+            [getattr(x, name) if x else float("nan") for x in layouts],
+            unit,
+            words,
+        )
+        for column, name, unit, words in LAYOUT_COLUMNS
+    ]
+
+
+BOUND = "90 % confidence; holds whenever the trials were stopped"
+
+
 def scores_table(scores: Sequence[Score]) -> Table:
     """Return what the trials say of every layout of every target."""
     s = scores
-    layout = [x.layout for x in s]
+
+    def of(name: str, digits: int) -> Any:
+        return rounded([getattr(x, name) for x in s], digits)
+
     return table_of(
         [
             ("target", np.array([x.target for x in s], dtype=str), None, "name"),
-            ("cadence_line", [x.cadence_line_nights for x in layout], "d", "between spectra"),
-            (
-                "cadence_continuum",
-                [x.cadence_continuum_nights for x in layout],
-                "d",
-                "between continuum epochs",
-            ),
-            ("season_length", [x.season_length_d for x in layout], "d", "of each season"),
-            ("seasons", [x.seasons for x in layout], None, "number of seasons"),
-            ("epochs_line", rounded([x.epochs_line for x in s], 1), None, "mean over weather"),
-            (
-                "epochs_continuum",
-                rounded([x.epochs_continuum for x in s], 1),
-                None,
-                "mean over weather",
-            ),
-            (
-                "success",
-                rounded([x.success for x in s], 4),
-                None,
-                "share of trials with a right claim",
-            ),
-            (
-                "success_lo",
-                rounded([x.success_lo for x in s], 4),
-                None,
-                "lower end, 90 % confidence (Wilson)",
-            ),
-            (
-                "success_hi",
-                rounded([x.success_hi for x in s], 4),
-                None,
-                "upper end, 90 % confidence (Wilson)",
-            ),
-            (
-                "false_claims",
-                rounded([x.false_claims for x in s], 4),
-                None,
-                "share of trials with a wrong claim",
-            ),
-            (
-                "false_claims_hi",
-                rounded([x.false_claims_hi for x in s], 4),
-                None,
-                "upper end, 90 % confidence (Wilson)",
-            ),
-            ("hours", rounded([x.hours for x in s], 2), "h", "clock hours, both streams"),
-            ("hours_line", rounded([x.hours_line for x in s], 2), "h", "clock hours, line stream"),
-            ("hours_shutter", rounded([x.hours_shutter for x in s], 2), "h", "exposures alone"),
-            ("trials", [x.trials for x in s], None, "0: the layout cannot be scheduled"),
+            *layout_columns([x.layout for x in s]),
+            ("epochs_line", of("epochs_line", 1), None, "mean over weather"),
+            ("epochs_continuum", of("epochs_continuum", 1), None, "mean over weather"),
+            ("forecast", of("promise", 4), None, "success expected before any trial"),
+            ("success", of("success", 4), None, "share of trials with a right claim"),
+            ("success_lo", of("success_lo", 4), None, f"lower end, {BOUND}"),
+            ("success_hi", of("success_hi", 4), None, f"upper end, {BOUND}"),
+            ("false_claims", of("false_claims", 4), None, "share of trials with a wrong claim"),
+            ("false_claims_hi", of("false_claims_hi", 4), None, f"upper end, {BOUND}"),
+            ("hours", of("hours", 2), "h", "clock hours, both streams"),
+            ("hours_line", of("hours_line", 2), "h", "clock hours, line stream"),
+            ("hours_shutter", of("hours_shutter", 2), "h", "exposures alone"),
+            ("trials", [x.trials for x in s], None, "0: not needed, or not possible: see note"),
             ("note", np.array([x.note for x in s], dtype=str), None, "what stands in the way"),
         ]
     )
@@ -215,20 +208,7 @@ def forecast_table(forecasts: Sequence[LayoutForecast]) -> Table:
     return table_of(
         [
             ("target", np.array([x.target for x in f], dtype=str), None, "name"),
-            (
-                "cadence_line",
-                [x.layout.cadence_line_nights for x in f],
-                "d",
-                "between spectra",
-            ),
-            (
-                "cadence_continuum",
-                [x.layout.cadence_continuum_nights for x in f],
-                "d",
-                "between continuum epochs",
-            ),
-            ("season_length", [x.layout.season_length_d for x in f], "d", "of each season"),
-            ("seasons", [x.layout.seasons for x in f], None, "number of seasons"),
+            *layout_columns([x.layout for x in f]),
             (
                 "success",
                 rounded([x.success for x in f], 3),
@@ -236,6 +216,8 @@ def forecast_table(forecasts: Sequence[LayoutForecast]) -> Table:
                 "expected where variability and response are known",
             ),
             ("error", significant([x.error for x in f], 2), None, "least fractional lag error"),
+            ("epochs_line", rounded([x.epochs_line for x in f], 1), None, "mean over weather"),
+            ("hours", rounded([x.hours for x in f], 2), "h", "clock hours, both streams"),
         ]
     )
 
@@ -251,14 +233,6 @@ def recommendation_table(plan: Plan) -> Table:
             digits,
         )
 
-    def layout(name: str) -> Any:
-        return np.array(
-            [
-                nan if r.score is None else float(getattr(r.score.layout, name))
-                for r in recommendations
-            ]
-        )
-
     run = [executed.get(r.target) for r in recommendations]
     return table_of(
         [
@@ -269,18 +243,10 @@ def recommendation_table(plan: Plan) -> Table:
                 None,
                 "observe: goal met; risky: goal missed, still scheduled; leave out: not scheduled",
             ),
-            ("cadence_line", layout("cadence_line_nights"), "d", "between spectra"),
-            (
-                "cadence_continuum",
-                layout("cadence_continuum_nights"),
-                "d",
-                "between continuum epochs",
-            ),
-            ("season_length", layout("season_length_d"), "d", "of each season"),
-            ("seasons", layout("seasons"), None, "number of seasons"),
+            *layout_columns([r.score.layout if r.score else None for r in recommendations]),
             ("success", of("success", 4), None, "share of trials with a right claim, target alone"),
-            ("success_lo", of("success_lo", 4), None, "lower end, 90 % confidence (Wilson)"),
-            ("success_hi", of("success_hi", 4), None, "upper end, 90 % confidence (Wilson)"),
+            ("success_lo", of("success_lo", 4), None, f"lower end, {BOUND}"),
+            ("success_hi", of("success_hi", 4), None, f"upper end, {BOUND}"),
             ("false_claims", of("false_claims", 4), None, "share of trials with a wrong claim"),
             ("hours", of("hours", 2), "h", "clock hours to expect in average weather, alone"),
             ("hours_shutter", of("hours_shutter", 2), "h", "of these, exposures alone"),

@@ -72,6 +72,28 @@ class Layout:
     cadence_continuum_nights: float
     season_length_d: float
     seasons: int
+    shift_d: float = 0.0
+    """Nights by which each season starts later than the best stretch of the visible season."""
+    exposure_line: float = 1.0
+    """Exposure over that of the stream as it stands in the campaign."""
+    exposure_continuum: float = 1.0
+
+    def __str__(self) -> str:
+        """Return the layout in words; it names random streams, so it must not change."""
+        words = (
+            f"spectra each {self.cadence_line_nights:g}, images each "
+            f"{self.cadence_continuum_nights:g} nights, {self.seasons} x {self.season_length_d:g} d"
+        )
+        if self.shift_d:
+            words += f", {self.shift_d:+g} d"
+        if self.exposures != (1.0, 1.0):
+            words += f", exposures x {self.exposure_line:g} and {self.exposure_continuum:g}"
+        return words
+
+    @property
+    def exposures(self) -> tuple[float, float]:
+        """Return the factors of line and continuum exposures."""
+        return self.exposure_line, self.exposure_continuum
 
 
 @dataclass(frozen=True, slots=True)
@@ -90,7 +112,10 @@ class Campaign:
     line: Stream
     limits: Limits
     season_lengths_d: tuple[float, ...]
+    """Candidates; empty: generated for each target, as `seasons` and the streams' cadences."""
     seasons: tuple[int, ...]
+    season_shifts_d: tuple[float, ...]
+    """Candidates for `Layout.shift_d`."""
     success: SuccessRule
     simulation: Simulation
     cosmology: Cosmology
@@ -105,23 +130,3 @@ class Campaign:
         """Return the site of the telescope called `telescope`."""
         place = self.telescope(telescope).site
         return next(s for s in self.sites if s.name == place)
-
-    def layouts(self) -> tuple[Layout, ...]:
-        """Return every candidate layout: cadences x season lengths x numbers of seasons.
-
-        A continuum sampled more sparsely than the line is left out wherever a denser one is on
-        offer: the driver must be known between the line's epochs. A continuum that is measured in
-        spectra alone has the line's cadence.
-        """
-        pairs = [
-            (line, cont)
-            for line in self.line.cadence_nights
-            for cont in (self.continuum.cadence_nights if self.continuum.feeds else (line,))
-            if cont <= line or cont == self.continuum.cadence_nights[0]
-        ]
-        return tuple(
-            Layout(line, cont, length, seasons)
-            for line, cont in pairs
-            for length in self.season_lengths_d
-            for seasons in self.seasons
-        )

@@ -196,7 +196,7 @@ class Stream:
     kind: str
     """``"continuum"`` or ``"line"``."""
     cadence_nights: tuple[float, ...]
-    """Candidate cadences, each >= 1, ascending."""
+    """Candidate cadences, each >= 1, ascending; empty: generated for each target."""
     feeds: tuple[Feed, ...]
     """The telescopes that are joined into this light curve, the main one first. Empty for a
     continuum that is measured in the line's spectra alone."""
@@ -206,6 +206,8 @@ class Stream:
     """Caps on this stream alone, besides those of its telescopes."""
     measurement: LineMeasurement | None
     """Of the line stream; None for the continuum."""
+    deepen: tuple[float, ...] = (1.0,)
+    """Candidate exposures over those of the feeds."""
 
 
 @dataclass(frozen=True, slots=True)

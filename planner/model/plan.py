@@ -5,12 +5,15 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import Any
 
-from planner.model.campaign import Campaign
+from planner.model.campaign import Campaign, Layout
 from planner.model.sky import Nights, Windows
 from planner.model.target import Forecast
 from planner.model.trial import Prospect, Score, TrialTable
 
-__all__ = ["Help", "Opinion", "Plan", "Recommendation", "SiteSky", "TimeSpent", "Unplaced", "Visit"]
+__all__ = [
+    "Cause", "Help", "Opinion", "Plan", "Recommendation", "Sensitivity", "SiteSky", "Subset",
+    "TimeSpent", "Unplaced", "Visit",
+]  # fmt: skip
 
 
 @dataclass(frozen=True, slots=True)
@@ -32,7 +35,41 @@ class Help:
     success: float
     gain: float
     """Paired: the same draws with and without the change."""
+    gain_lo: float
+    gain_hi: float
+    """Each holds with 90 % confidence."""
     hours: float
+    """Clock hours added."""
+    trials: int
+
+    @property
+    def per_hour(self) -> float:
+        """Return the gain per added hour; less than an hour counts as one."""
+        return self.gain / max(self.hours, 1.0)
+
+
+@dataclass(frozen=True, slots=True)
+class Cause:
+    """What the failed trials of a layout fail for want of."""
+
+    want: str
+    share: float
+    """Of the failed trials."""
+
+
+@dataclass(frozen=True, slots=True)
+class Subset:
+    """The targets that give the most lags for a number of clock hours, each with a layout."""
+
+    hours: float
+    chosen: tuple[tuple[str, Layout], ...]
+    lags: float
+    """Expected number of right lags."""
+    lags_lo: float
+    lags_hi: float
+    """10th and 90th percentile: targets share the weather."""
+    spent: float
+    """Clock hours."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -46,7 +83,9 @@ class Recommendation:
     """None: the target cannot be observed at all."""
     why: str
     helps: tuple[Help, ...]
-    """Largest gain first; empty where the goal is met."""
+    """Largest gain per added hour first; empty where the goal is met."""
+    causes: tuple[Cause, ...] = ()
+    """Commonest first."""
 
     @property
     def scheduled(self) -> bool:
@@ -60,9 +99,10 @@ class Opinion:
 
     target: str
     what: str
-    """``likelihood`` (or ``correlation``): the other recovery method; ``unrelated line``: a line
-    that knows nothing of the continuum, so that every claim is false; else the name of a
-    disturbance."""
+    """``correlation``: recovered by it where the likelihood judges; ``likelihood``: its information
+    forecast (no trials; bounds and false claims NaN) where the correlation judges; ``unrelated
+    line``: a line that knows nothing of the continuum, so that every claim is false; else the name
+    of a disturbance."""
     success: float
     success_lo: float
     success_hi: float

@@ -11,7 +11,7 @@ from planner.model.campaign import Layout
 from planner.model.sky import Season
 from planner.model.target import Forecast
 
-__all__ = ["FeedNights", "Prospect", "Score", "TrialTable"]
+__all__ = ["FeedNights", "Offer", "Prospect", "Score", "TrialTable"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -67,11 +67,42 @@ class Prospect:
 
 
 @dataclass(frozen=True, slots=True)
+class Offer:
+    """One target's candidate layouts, and the target as each of them sees it."""
+
+    layouts: tuple[Layout, ...]
+    prospects: tuple[tuple[tuple[float, float], Prospect], ...]
+    """By the factors of line and continuum exposures; the first with exposures as they are."""
+
+    @property
+    def target(self) -> str:
+        """Return the target's name."""
+        return self.plain.forecast.name
+
+    @property
+    def plain(self) -> Prospect:
+        """Return the target with exposures as they are."""
+        return self.prospects[0][1]
+
+    def prospect(self, layout: Layout) -> Prospect:
+        """Return the target as one of the layouts sees it."""
+        return next(p for exposures, p in self.prospects if exposures == layout.exposures)
+
+
+@dataclass(frozen=True, slots=True)
 class TrialTable:
-    """Outcomes of every layout of one target; arrays of shape (layouts, trials)."""
+    """Outcomes of every layout of one target; arrays of shape (layouts, trials).
+
+    Layouts may have had other numbers of trials: of each, the first ones are filled; beyond them
+    floats are NaN, counts 0 and outcomes False.
+    """
 
     target: str
     layouts: tuple[Layout, ...]
+    trials: NDArray[np.int64]
+    """Trials of each layout, (layouts,)."""
+    most: int
+    """Most trials a layout might have had, where they raced; 0: the number was fixed."""
     lag_true_d: NDArray[np.float64]
     lag_d: NDArray[np.float64]
     lag_lo_d: NDArray[np.float64]
@@ -95,9 +126,12 @@ class Score:
 
     target: str
     layout: Layout
+    promise: float
+    """Success that the information forecast expects; NaN where none was made."""
     epochs_line: float
     epochs_continuum: float
     success: float
+    """NaN without trials."""
     success_lo: float
     success_hi: float
     claims: float
@@ -111,4 +145,4 @@ class Score:
     """Exposures alone, both streams."""
     trials: int
     note: str
-    """Why the layout could not be tried as it stands, or in what it was cut short; else empty."""
+    """Why the layout was not tried, or in what it was cut short; else empty."""

@@ -1,10 +1,11 @@
-"""The advice: which layout for each target, why, and what would help where the goal is missed.
+"""The advice: which layout for each target, why, what limits it and what would help.
 
-In: scores, trials, and the campaign to try changes on. Out: one recommendation per target.
-The advised layout is the cheapest whose success reaches the goal with 90 % confidence.
+In: settled races of layouts, and the campaign to try changes on. Out: one recommendation per
+target, and the best subset of targets for a number of hours. The advised layout is the cheapest
+whose success reaches the goal with 90 % confidence.
 """
 
+from planner.recommend.advise import advise, advise_without_help
 from planner.recommend.choose import choose, hardened, recommend
-from planner.recommend.helps import Change, changes_for, helps_of
 
-__all__ = ["Change", "changes_for", "choose", "hardened", "helps_of", "recommend"]
+__all__ = ["advise", "advise_without_help", "choose", "hardened", "recommend"]

@@ -6,26 +6,21 @@ from collections import Counter
 from collections.abc import Sequence
 from dataclasses import replace
 
-import numpy as np
-
 from planner.model.campaign import SuccessRule
-from planner.model.plan import Help, Opinion, Recommendation
+from planner.model.plan import Cause, Help, Opinion, Recommendation
 from planner.model.trial import Score, TrialTable
-from planner.scoring import REASONS
+from planner.scoring import HOPELESS, REASONS
 
-__all__ = ["choose", "hardened", "recommend"]
-
-HOPELESS = 0.25
-"""A target whose best layout stays below this share of the goal, with 90 % confidence, is left out
-of the schedule (our choice; the table says so)."""
+__all__ = ["choose", "hardened", "hopeless", "recommend"]
 
 
 def choose(scores: Sequence[Score], rule: SuccessRule) -> tuple[Score | None, bool]:
     """Return the advised layout's score and whether it reaches the goal.
 
     The cheapest layout in clock hours whose success is at or above the goal with 90 % confidence;
-    if there is none, the one with the highest success, the cheaper of equals. None if nothing
-    could be tried.
+    if there is none, the one with the highest lower bound of success (the highest success where
+    all had as many trials), of equals the most promising by the forecast. None if nothing could be
+    tried.
     """
     tried = [s for s in scores if s.trials > 0]
     if not tried:
@@ -33,7 +28,12 @@ def choose(scores: Sequence[Score], rule: SuccessRule) -> tuple[Score | None, bo
     good = [s for s in tried if s.success_lo >= rule.goal]
     if good:
         return min(good, key=lambda s: (s.hours, -s.success)), True
-    return min(tried, key=lambda s: (-s.success, s.hours)), False
+    return min(tried, key=lambda s: (-s.success_lo, -s.success, -s.promise, s.hours)), False
+
+
+def hopeless(best: Score, rule: SuccessRule) -> bool:
+    """Say whether even the best layout of a target is shown to stay far below the goal."""
+    return best.success_hi < HOPELESS * rule.goal
 
 
 def recommend(
@@ -42,6 +42,7 @@ def recommend(
     table: TrialTable,
     rule: SuccessRule,
     helps: Sequence[Help] = (),
+    causes: Sequence[Cause] = (),
 ) -> Recommendation:
     """Return the recommendation for one target, with the reason in words.
 
@@ -53,7 +54,9 @@ def recommend(
     table : TrialTable
     rule : SuccessRule
     helps : sequence of Help
-        Changes tried on the best layout where the goal is missed.
+        Changes tried on the best layout where the goal is missed, the most worth first.
+    causes : sequence of Cause
+        What its failed trials fail for want of.
     """
     best, reached = choose(scores, rule)
     if best is None:
@@ -65,8 +68,8 @@ def recommend(
             f"cheapest layout with success of at least {rule.goal:.0%} at 90 % confidence; "
             f"{cheaper} cheaper {'layout misses' if cheaper == 1 else 'layouts miss'} it"
         )
-        return Recommendation(target, "observe", best, why, ())
-    ranked = tuple(sorted(helps, key=lambda h: (-h.gain, h.hours)))
+        return Recommendation(target, "observe", best, why, (), tuple(causes))
+    ranked = tuple(helps)
     if best.success >= rule.goal:
         why = (
             f"no layout is shown to reach the goal of {rule.goal:.0%}: {best.trials} trials leave "
@@ -79,12 +82,21 @@ def recommend(
         )
     if best.note:
         why += f"; {best.note}"
-    if ranked and ranked[0].gain > 0:
-        why += f"; what would help most: {ranked[0].change} (success {ranked[0].success:.0%})"
+    sure = [h for h in ranked if h.gain_lo > 0]
+    if sure:
+        most = max(sure, key=lambda h: h.gain)
+        why += (
+            f"; what would help most for the time: {sure[0].change} (success {sure[0].success:.0%},"
+            f" {sure[0].hours:+.0f} h)"
+        )
+        if most is not sure[0]:
+            why += (
+                f", and whatever the time: {most.change} ({most.success:.0%}, {most.hours:+.0f} h)"
+            )
     elif ranked:
-        why += "; none of the changes tried would help"
-    hopeless = best.success_hi < HOPELESS * rule.goal
-    return Recommendation(target, "leave out" if hopeless else "risky", best, why, ranked)
+        why += "; none of the changes tried is shown to help"
+    decision = "leave out" if hopeless(best, rule) else "risky"
+    return Recommendation(target, decision, best, why, ranked, tuple(causes))
 
 
 def hardened(
@@ -109,8 +121,8 @@ def hardened(
 def _limits(table: TrialTable, score: Score) -> str:
     """Say what the failed trials failed of, commonest first."""
     at = table.layouts.index(score.layout)
-    failed = Counter(int(r) for r in table.reason[at] if r > 0)
-    trials = int(np.size(table.reason[at]))
+    trials = int(table.trials[at])
+    failed = Counter(int(r) for r in table.reason[at, :trials] if r > 0)
     commonest = sorted(failed.items(), key=lambda item: (-item[1], item[0]))[:2]
     return "trials fail mostly of: " + ", ".join(
         f"{REASONS[reason]} ({count / trials:.0%})" for reason, count in commonest

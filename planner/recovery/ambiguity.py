@@ -15,10 +15,10 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from planner.kernels.joint_line import walk_factor, whitened
-from planner.recovery.information import Design
+from planner.recovery.information import Design, orthonormal
 from planner.recovery.response import cross_covariance, line_covariance
 
-__all__ = ["Ambiguity", "ambiguity", "covariances"]
+__all__ = ["Ambiguity", "ambiguity", "covariances", "factor_of"]
 
 Floats = NDArray[np.float64]
 
@@ -33,6 +33,16 @@ class Ambiguity:
     mistaken: Floats
     """Probability that the other lag is the likelier of the two."""
     reason: str
+
+
+def factor_of(design: Design) -> tuple[tuple[Floats, Floats, Floats], Floats]:
+    """Return the factor of the continuum's unit covariance and its whitened offsets.
+
+    The offsets are orthonormal rows, (telescopes, n).
+    """
+    factor = walk_factor(design.t1_d, design.e1 / design.sigma, design.tau_d)
+    basis = orthonormal(whitened(*factor, design.offsets))
+    return factor, basis
 
 
 def covariances(design: Design, lags_d: Floats) -> tuple[Floats, Floats, Floats]:
@@ -50,13 +60,12 @@ def covariances(design: Design, lags_d: Floats) -> tuple[Floats, Floats, Floats]
     basis : array (n, telescopes)
         Whitened offsets of the continuum, orthonormal.
     """
-    walk = walk_factor(design.t1_d, design.e1 / design.sigma, design.tau_d)
-    basis = np.linalg.qr(whitened(*walk, design.offsets))[0]
+    walk, basis = factor_of(design)
     cross = cross_covariance(design.t1_d, design.t2_d, lags_d, design.tau_d, design.response)
     for k in range(lags_d.size):
         cross[k] = whitened(*walk, cross[k])
     line = line_covariance(design.t2_d, lags_d, design.tau_d, design.response)
-    return cross, line, basis
+    return cross, line, np.ascontiguousarray(basis.T)
 
 
 def ambiguity(design: Design, lags_d: ArrayLike) -> Ambiguity:

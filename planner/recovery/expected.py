@@ -17,17 +17,26 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from planner.kernels.joint_forecast import log_likelihoods
-from planner.recovery.ambiguity import covariances
-from planner.recovery.density import quantiles
-from planner.recovery.information import Design
+from planner.kernels.joint_forecast import log_likelihoods, simulated_lines
+from planner.recovery.ambiguity import factor_of
+from planner.recovery.information import Design, free
+from planner.recovery.response import cross_covariance, line_covariance
 
 __all__ = ["Expected", "expected_recovery"]
 
 Floats = NDArray[np.float64]
 
-GRID, NEAR = 48, 13
+GRID, NEAR = 49, 13
 """Trial lags over the whole range, and more of them about the true one."""
+
+STEP = 8
+"""Every so many of them are tried first, those between where it matters; a power of two."""
+
+HOPELESS = 10.0
+"""So far below the best in ln likelihood at both sides, nothing is looked for between."""
+
+BLOCK = 30_000
+"""Elements of the matrices that are held at a time: they stay in the processor's cache."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -107,32 +116,96 @@ def _simulated(
     prior: Callable[[Floats], Floats] | None,
 ) -> Floats:
     """Return 16th, 50th and 84th percentile of each simulated posterior, (3, simulations)."""
+    likelihoods = _likelihoods(design, rng, simulations, scale_dex)
+
+    def densities(lags: Floats) -> Floats:
+        """Return ln density at each lag, (k, simulations)."""
+        curves = likelihoods(lags)
+        if prior is not None:
+            with np.errstate(divide="ignore"):
+                curves += np.log(np.asarray(prior(lags), dtype=np.float64))[:, None]
+        return curves
+
     near = design.lag_d + np.linspace(-0.45, 0.45, NEAR) * abs(design.lag_d)
     lags = np.union1d(np.linspace(lo_d, hi_d, GRID), near[(near > lo_d) & (near < hi_d)])
-    white, line, basis = covariances(design, np.append(lags, design.lag_d))
-    offsets = basis.T @ white
-    n, m = white.shape[1:]
+    # A prior may leave nothing but what lies between two of the lags that are tried first.
+    kept, curves = _refined(densities, lags, design.lag_d, STEP if prior is None else 1)
+    top = curves.max(axis=0)
+    if not np.all(np.isfinite(top)):
+        return np.full((3, simulations), math.nan)
+    return _quantiles(lags[kept], np.exp(curves - top), (0.16, 0.5, 0.84))
+
+
+def _refined(
+    densities: Callable[[Floats], Floats], lags: Floats, truth_d: float, step: int
+) -> tuple[NDArray[np.bool_], Floats]:
+    """Return which lags were tried, (k,), and ln density at these, (tried, simulations).
+
+    The truth's lag and each `step`-th are tried, then those between that a neighbour gives hope.
+    """
+    number = np.arange(lags.size)
+    tried = number % step == 0
+    tried[-1] = tried[min(np.searchsorted(lags, truth_d), lags.size - 1)] = True
+    curves = densities(lags[tried])
+    while step > 1:
+        place = np.cumsum(tried) - 1
+        between = np.flatnonzero((number % step == step // 2) & ~tried)
+        beside = np.maximum(curves[place[between]], curves[place[between] + 1])
+        more = between[np.any(beside > curves.max(axis=0) - HOPELESS, axis=1)]
+        curves = np.insert(curves, place[more] + 1, densities(lags[more]), axis=0)
+        tried[more] = True
+        step //= 2
+    return tried, curves
+
+
+def _quantiles(x: Floats, density: Floats, probabilities: Sequence[float]) -> Floats:
+    """Return quantiles of many densities (k, r) at once; see `planner.recovery.density`."""
+    step = np.diff(x)[:, None]
+    below = np.zeros(density.shape)
+    np.cumsum(0.5 * step * (density[:-1] + density[1:]), axis=0, out=below[1:])
+    found, columns = [], np.arange(density.shape[1])
+    for share in probabilities:
+        wanted = share * below[-1]
+        k = np.clip((below <= wanted).sum(axis=0) - 1, 0, step.size - 1)
+        rest, left, width = wanted - below[k, columns], density[k, columns], step[k, 0]
+        slope = (density[k + 1, columns] - left) / width
+        # The root of slope u^2 / 2 + left u = rest in the form that does not cancel.
+        root = np.sqrt(np.maximum(left**2 + 2.0 * slope * rest, 0.0)) + left
+        into = np.divide(2.0 * rest, root, out=np.zeros_like(rest), where=root > 0.0)
+        found.append(x[k] + np.clip(into, 0.0, width))
+    return np.array(found)
+
+
+def _likelihoods(
+    design: Design, rng: np.random.Generator, simulations: int, scale_dex: float
+) -> Callable[[Floats], Floats]:
+    """Draw light curves; return the function that gives their log likelihoods at any lags."""
+    t1, t2, tau = design.t1_d, design.t2_d, design.tau_d
+    factor, basis = factor_of(design)
     rms = design.scale * design.sigma
-    unit = line[-1] - white[-1].T @ white[-1] + offsets[-1].T @ offsets[-1]
-    truth = rms**2 * unit + np.diag(design.e2**2)
-    normals = rng.standard_normal((n, simulations))
-    normals -= basis @ (basis.T @ normals)
-    noise = np.linalg.cholesky(truth) @ rng.standard_normal((m, simulations))
     stiffness = 1.0 / (scale_dex * math.log(10.0)) ** 2
-    curves = np.array(
-        [
+    normals = rng.standard_normal((simulations, t1.size))
+    normals = np.ascontiguousarray(free(normals.T, basis).T)
+    own = rng.standard_normal((simulations, t2.size))
+
+    def covariances(lags: Floats) -> tuple[Floats, Floats]:
+        return (
+            cross_covariance(t1, t2, lags, tau, design.response),
+            line_covariance(t2, lags, tau, design.response),
+        )
+
+    cross, line = covariances(np.array([design.lag_d]))
+    lines = simulated_lines(factor, basis, cross[0], line[0], design.e2, rms, normals, own)
+    block = max(1, BLOCK // (t2.size * max(t1.size, t2.size)))
+
+    def curves(lags: Floats) -> Floats:
+        parts = [
             log_likelihoods(
-                white[k], white[-1], offsets[k], line[k], design.e2, rms, normals, noise, stiffness
+                factor, basis, *covariances(lags[k : k + block]), design.e2, rms, normals, lines,
+                stiffness,
             )
-            for k in range(lags.size)
-        ]
-    )
-    if prior is not None:
-        weight = np.asarray(prior(lags), dtype=np.float64)
-        if not weight.max() > 0.0:
-            return np.full((3, simulations), math.nan)
-        with np.errstate(divide="ignore"):
-            curves += np.log(weight)[:, None]
-    wanted = np.array([0.16, 0.5, 0.84])
-    density = np.exp(curves - curves.max(axis=0)).T
-    return np.column_stack([quantiles(lags, one, wanted) for one in density])
+            for k in range(0, lags.size, block)
+        ]  # fmt: skip
+        return np.concatenate([np.empty((0, simulations)), *parts])
+
+    return curves

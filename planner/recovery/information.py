@@ -3,12 +3,14 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from planner.kernels import joint_response
+from planner.kernels.joint_line import walk_factor, whitened
+from planner.kernels.products import inverse_factor, product
 from planner.recovery.response import Response
 
 __all__ = ["Design", "FisherForecast", "fisher_forecast", "knapp_carter_error", "make_design"]
@@ -91,6 +93,43 @@ def _usable(t_d: ArrayLike, error: ArrayLike) -> tuple[Floats, Floats, NDArray[n
     return t[used], e[used], used
 
 
+def with_normal_points(design: Design, share: float) -> Design:
+    """Return the design with epochs of a telescope averaged that lie close together.
+
+    Weights are the inverse squares of the errors.
+
+    Parameters
+    ----------
+    design : Design
+    share : float
+        Length of the bins in time over lag, timescale or span, whichever is shortest.
+    """
+    if design.reason:
+        return design
+    span_d = min(float(np.ptp(design.t1_d)), float(np.ptp(design.t2_d)))
+    length_d = share * min(abs(design.lag_d), design.tau_d, span_d)
+    if not length_d > 0.0:
+        return design
+    which = np.argmax(design.offsets, axis=1)
+    t1, e1, telescope = _averaged(design.t1_d, design.e1, which, length_d)
+    t2, e2, _ = _averaged(design.t2_d, design.e2, np.zeros(design.t2_d.size, np.intp), length_d)
+    offsets = np.eye(design.offsets.shape[1])[telescope]
+    return replace(design, t1_d=t1, e1=e1, offsets=offsets, t2_d=t2, e2=e2)
+
+
+def _averaged(
+    t_d: Floats, error: Floats, telescope: NDArray[np.intp], length_d: float
+) -> tuple[Floats, Floats, NDArray[np.intp]]:
+    """Return mean times, errors and telescope of each bin that has an epoch, in time order."""
+    bins = np.floor(t_d / length_d).astype(np.intp)
+    number = telescope.max() + 1
+    kept, which = np.unique(bins * number + telescope, return_inverse=True)
+    weight = np.bincount(which, error**-2.0)
+    t = np.bincount(which, t_d * error**-2.0) / weight
+    order = np.argsort(t, kind="stable")
+    return t[order], np.sqrt(1.0 / weight[order]), np.asarray(kept % number)[order]
+
+
 @dataclass(frozen=True, slots=True)
 class FisherForecast:
     """The least error with which a lag can be known near its true value."""
@@ -100,7 +139,8 @@ class FisherForecast:
     error_known_d: float
     """Of the lag, everything known but the offsets, where they are not."""
     matrix: Floats
-    """Information on lag, ln sigma, ln tau and ln scale, priors included, (4, 4)."""
+    """Information on lag, ln sigma, ln tau and ln scale, priors included, (4, 4); of what is known
+    infinite, and 0 beside the diagonal."""
     reason: str
 
 
@@ -115,7 +155,8 @@ def fisher_forecast(
 
     ``F_ij = 1/2 tr(P C_i P C_j)``, C the joint covariance of both curves, C_i its derivatives (by
     central differences), P its inverse freed of the offsets, as for a restricted likelihood
-    (Patterson & Thompson 1971, Biometrika 58, 545). The response keeps its width in days when the
+    (Patterson & Thompson 1971, Biometrika 58, 545); worked out as the continuum's information
+    plus that of the line given the continuum. The response keeps its width in days when the
     lag is varied: a width is hardly ever known well enough to tell the lag.
 
     Parameters
@@ -128,10 +169,9 @@ def fisher_forecast(
     """
     if design.reason:
         return FisherForecast(math.nan, math.nan, np.full((4, 4), math.nan), design.reason)
-    projector = _projector(design, offsets_known)
-    products = [projector @ derivative for derivative in _derivatives(design)]
-    matrix = np.array([[0.5 * np.sum(a * b.T) for b in products] for a in products])
-    for k, dex in enumerate((sigma_dex, tau_dex, scale_dex), start=1):
+    priors = (sigma_dex, tau_dex, scale_dex)
+    matrix = _information(design, offsets_known, (True, *(dex > 0.0 for dex in priors)))
+    for k, dex in enumerate(priors, start=1):
         matrix[k, k] += 1.0 / (dex * math.log(10.0)) ** 2 if dex > 0.0 else math.inf
     known = float(matrix[0, 0]) ** -0.5 if matrix[0, 0] > 0.0 else math.inf
     return FisherForecast(_marginal_error(matrix), known, matrix, "")
@@ -149,52 +189,90 @@ def _marginal_error(matrix: Floats) -> float:
     return float(math.sqrt(inverse[0, 0]) / size[0])
 
 
-def _blocks(design: Design, lag_d: float, tau_d: float) -> tuple[Floats, Floats, Floats]:
-    """Return the unit covariances continuum-continuum, continuum-line, line-line."""
+def _information(design: Design, offsets_known: bool, asked: tuple[bool, ...]) -> Floats:
+    """Return the information without priors, (4, 4), 0 for parameters that are not asked for.
+
+    The continuum, freed of its offsets and whitened, has unit covariance; given it the line has
+    the mean ``b' x`` and the covariance S. Each derivative has a part in the continuum's
+    covariance (`own`), one in the line's mean (`mean`) and one in S (`given`), the latter two
+    whitened by S and freed of the line's offset.
+    """
+    factor = walk_factor(design.t1_d, design.e1 / design.sigma, design.tau_d)
+    basis = orthonormal(whitened(*factor, design.offsets))[: 0 if offsets_known else None]
+
+    def white(columns: Floats) -> Floats:
+        return free(whitened(*factor, np.ascontiguousarray(columns)), basis)
+
+    cross, line = _line_blocks(design, design.lag_d, design.tau_d)
+    b = np.ascontiguousarray(white(cross).T)
+    error = design.e2 / (design.sigma * design.scale)
+    root = inverse_factor(line - product(b, b) + np.diag(error**2))
+    ones = orthonormal(root.sum(axis=1)[:, None])[: 0 if offsets_known else None]
+    n, m = cross.shape
+    first = n * n if any(asked[1:3]) else 0
+    parts = np.zeros((4, first + m * m + n * m))
+    for k, part in enumerate(parts):
+        if not asked[k]:
+            continue
+        by_own, by_cross, by_line = _derivative(design, k, cross, line)
+        mean, given = white(by_cross), by_line
+        if by_own is not None:
+            own = white(white(by_own).T)
+            via = product(own, b)
+            mean -= via
+            given = given - product(b, np.ascontiguousarray(via.T))
+            part[:first] = math.sqrt(0.5) * own.ravel()
+        mixed = product(b, np.ascontiguousarray(mean.T))
+        given = product(product(root, given - mixed - mixed.T), root)
+        given = free(free(given, ones).T, ones)
+        part[first : first + m * m] = math.sqrt(0.5) * given.ravel()
+        part[first + m * m :] = free(product(root, mean), ones).ravel()
+    return np.asarray(product(parts, parts))
+
+
+def orthonormal(columns: Floats) -> Floats:
+    """Return orthonormal rows that span a few columns, after Gram and Schmidt."""
+    rows = np.zeros(columns.T.shape)
+    for k, column in enumerate(columns.T):
+        rest = free(column[:, None].copy(), rows[:k])[:, 0]
+        rows[k] = rest / math.sqrt(np.sum(rest * rest))
+    return rows
+
+
+def free(columns: Floats, rows: Floats) -> Floats:
+    """Take what lies along orthonormal `rows` (p, n) off `columns` (n, k), and return these."""
+    for row in rows:
+        columns -= row[:, None] * np.einsum("i,ij->j", row, columns)
+    return columns
+
+
+def _line_blocks(design: Design, lag_d: float, tau_d: float) -> tuple[Floats, Floats]:
+    """Return the unit covariances continuum-line and line-line; the width is that of the truth."""
     code, t1, t2 = design.response.code, design.t1_d, design.t2_d
     width = design.response.widths_d(np.array([design.lag_d]))
-    own = np.exp(-np.abs(t1[:, None] - t1) / tau_d)
     cross = joint_response.cross_covariance(code, t1, t2, np.array([lag_d]), width, tau_d)[0]
-    return own, cross, joint_response.line_covariance(code, t2, width, tau_d)[0]
+    return cross, joint_response.line_covariance(code, t2, width, tau_d)[0]
 
 
-def _joined(own: Floats, cross: Floats, line: Floats) -> Floats:
-    """Return one matrix of the three blocks."""
-    return np.block([[own, cross], [cross.T, line]])
-
-
-def _projector(design: Design, offsets_known: bool) -> Floats:
-    """Return the inverse covariance, freed of the offsets unless they are known."""
-    n, p = design.offsets.shape
-    own, cross, line = _blocks(design, design.lag_d, design.tau_d)
-    q = design.scale
-    covariance = design.sigma**2 * _joined(own, q * cross, q * q * line)
-    covariance[np.diag_indices_from(covariance)] += np.concatenate([design.e1, design.e2]) ** 2
-    columns = np.zeros((covariance.shape[0], p + 1))
-    columns[:n, :p], columns[n:, p] = design.offsets, 1.0
-    inverse = np.linalg.inv(covariance)
-    if offsets_known:
-        return np.asarray(inverse)
-    solved = inverse @ columns
-    return np.asarray(inverse - solved @ np.linalg.solve(columns.T @ solved, solved.T))
-
-
-def _derivatives(design: Design) -> list[Floats]:
-    """Return the covariance's derivatives by lag, ln sigma, ln tau and ln scale."""
-    variance, q, tau, lag = design.sigma**2, design.scale, design.tau_d, design.lag_d
-    own, cross, line = _blocks(design, lag, tau)
-    step = 1e-5 * tau
-    late, early = _blocks(design, lag + step, tau)[1], _blocks(design, lag - step, tau)[1]
-    slope = variance * q * (late - early) / (2.0 * step)
-    log_step = 1e-5
-    up, down = (_blocks(design, lag, tau * math.exp(s)) for s in (log_step, -log_step))
-    by_tau = [variance * (a - b) / (2.0 * log_step) for a, b in zip(up, down, strict=True)]
-    return [
-        _joined(np.zeros_like(own), slope, np.zeros_like(line)),
-        2.0 * variance * _joined(own, q * cross, q * q * line),
-        _joined(by_tau[0], q * by_tau[1], q * q * by_tau[2]),
-        variance * _joined(np.zeros_like(own), q * cross, 2.0 * q * q * line),
-    ]
+def _derivative(
+    design: Design, parameter: int, cross: Floats, line: Floats
+) -> tuple[Floats | None, Floats, Floats]:
+    """Return how the unit covariance's blocks change with lag, ln sigma, ln tau or ln scale."""
+    tau, lag = design.tau_d, design.lag_d
+    if parameter == 0:
+        step = 1e-5 * tau
+        late, early = (_line_blocks(design, lag + s, tau)[0] for s in (step, -step))
+        return None, (late - early) / (2.0 * step), np.zeros_like(line)
+    if parameter == 3:
+        return None, cross, 2.0 * line
+    apart = np.abs(design.t1_d[:, None] - design.t1_d) / tau
+    own = np.exp(-apart)
+    if parameter == 1:
+        return 2.0 * own, 2.0 * cross, 2.0 * line
+    step = 1e-5
+    up, down = (_line_blocks(design, lag, tau * math.exp(s)) for s in (step, -step))
+    by_cross, by_line = ((a - b) / (2.0 * step) for a, b in zip(up, down, strict=True))
+    return own * apart, by_cross, by_line
 
 
 def knapp_carter_error(

@@ -11,7 +11,7 @@ from matplotlib.figure import Figure
 from matplotlib.gridspec import GridSpec
 from matplotlib.image import AxesImage
 
-from planner.model.campaign import Campaign
+from planner.model.campaign import Campaign, Layout
 from planner.model.plan import SiteSky
 from planner.model.trial import Score
 from planner.recovery import Ambiguity
@@ -42,30 +42,30 @@ MJD_EPOCH = date(1858, 11, 17)
 def success_figure(scores: Sequence[Score], chosen: Score, goal: float) -> Figure:
     """Draw the success grid of one target: cadence against season length, a panel per seasons.
 
-    The goal's contour and the advised layout are marked; grey cells could not be scheduled. The
-    continuum cadence is that of the advised layout.
+    The goal's contour and the advised layout are marked; where no trials were needed the forecast
+    stands, in italics; grey cells could not be scheduled. Continuum cadence, exposures and shift
+    are those of the advised layout.
     """
-    kept = [
-        s
-        for s in scores
-        if s.layout.cadence_continuum_nights == chosen.layout.cadence_continuum_nights
-    ]
+    kept = [s for s in scores if _rest(s.layout) == _rest(chosen.layout)]
     cadences = sorted({s.layout.cadence_line_nights for s in kept})
     lengths = sorted({s.layout.season_length_d for s in kept})
     numbers = sorted({s.layout.seasons for s in kept})
     with styled():
-        figure = new_figure(1.6 + 3.1 * len(numbers), 1.3 + 0.45 * len(cadences))
+        width = 1.6 + max(3.1, 0.6 * len(lengths)) * len(numbers)
+        figure = new_figure(width, 1.3 + 0.45 * len(cadences))
         axes = figure.subplots(1, len(numbers), sharey=True, squeeze=False)[0]
         for ax, number in zip(axes, numbers, strict=True):
             grid = np.full((len(cadences), len(lengths)), np.nan)
+            tried = np.zeros(grid.shape, dtype=bool)
             for s in kept:
-                if s.layout.seasons == number and s.trials:
+                if s.layout.seasons == number and s.success_hi > 0:
                     at = (
                         cadences.index(s.layout.cadence_line_nights),
                         lengths.index(s.layout.season_length_d),
                     )
-                    grid[at] = s.success
-            image = _grid_panel(ax, grid, goal)
+                    tried[at] = s.trials > 0
+                    grid[at] = s.success if s.trials else s.promise
+            image = _grid_panel(ax, grid, tried, goal)
             if number == chosen.layout.seasons:
                 ax.plot(
                     lengths.index(chosen.layout.season_length_d),
@@ -87,10 +87,17 @@ def success_figure(scores: Sequence[Score], chosen: Score, goal: float) -> Figur
     return figure
 
 
-def _grid_panel(ax: Axes, grid: np.ndarray, goal: float) -> AxesImage:
+def _rest(layout: Layout) -> tuple[float, ...]:
+    """Return what is the same all over a success grid."""
+    return (layout.cadence_continuum_nights, layout.shift_d, *layout.exposures)
+
+
+def _grid_panel(ax: Axes, grid: np.ndarray, tried: np.ndarray, goal: float) -> AxesImage:
     """Draw one panel of shades with its numbers and the goal's contour; return the shades."""
     ax.set_facecolor("#d9d9d9")
-    image = ax.imshow(grid, vmin=0, vmax=1, cmap=SHADES, aspect="auto", origin="lower")
+    image = ax.imshow(
+        np.where(tried, grid, np.nan), vmin=0, vmax=1, cmap=SHADES, aspect="auto", origin="lower"
+    )
     for (row, column), value in np.ndenumerate(grid):
         known = np.isfinite(value)
         ax.text(
@@ -100,9 +107,10 @@ def _grid_panel(ax: Axes, grid: np.ndarray, goal: float) -> AxesImage:
             ha="center",
             va="center",
             fontsize=8,
-            color="white" if known and value < 0.55 else "black",
+            style="normal" if tried[row, column] else "italic",
+            color="white" if tried[row, column] and value < 0.55 else "black",
         )
-    _goal_contour(ax, np.nan_to_num(grid, nan=-1.0) >= goal)
+    _goal_contour(ax, tried & (np.nan_to_num(grid, nan=-1.0) >= goal))
     return image
 
 

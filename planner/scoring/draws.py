@@ -28,7 +28,9 @@ __all__ = [
     "Draw",
     "Measured",
     "Setting",
+    "draw_strangers",
     "draw_trial",
+    "normals_of",
     "setting_of",
     "sky_of_trial",
     "truth_of",
@@ -37,7 +39,8 @@ __all__ = [
 Floats = NDArray[np.float64]
 
 UNRELATED = 3
-"""Unrelated lines drawn in each trial."""
+"""Unrelated lines drawn in each trial to set a limit; one more stands in for the line itself where
+a line that knows nothing is asked for."""
 
 UNLIKE = 0.1
 """Spread of the scales and zero points of telescopes that join a stream, over the mean flux."""
@@ -91,8 +94,6 @@ class Draw:
     continuum: tuple[Measured, ...]
     """By telescope, as in the prospect."""
     line: tuple[Measured, ...]
-    unrelated: tuple[tuple[Measured, ...], ...]
-    """Lines that vary in the same way and know nothing of the continuum."""
 
 
 class Truth(NamedTuple):
@@ -108,10 +109,9 @@ class Truth(NamedTuple):
 def truth_of(setting: Setting, prospect: Prospect, trial: int) -> Truth:
     """Draw a trial's lag, amplitude and timescale about the forecast, and the response's width."""
     forecast = prospect.forecast
-    name = forecast.name
-    lag_z, amplitude_z, timescale_z = stream(setting.seed, "truth", name, trial).standard_normal(3)
+    lag_z, amplitude_z, timescale_z = normals_of(setting, prospect, trial)
     lag = forecast.lag_obs_d * 10 ** (forecast.lag_scatter_dex * lag_z)
-    share = stream(setting.seed, "response", name, trial).uniform(
+    share = stream(setting.seed, "response", forecast.name, trial).uniform(
         *setting.simulation.response_width
     )
     return Truth(
@@ -120,6 +120,11 @@ def truth_of(setting: Setting, prospect: Prospect, trial: int) -> Truth:
         timescale_d=forecast.timescale_obs_d * 10 ** (forecast.timescale_scatter_dex * timescale_z),
         width_d=lag * share,
     )
+
+
+def normals_of(setting: Setting, prospect: Prospect, trial: int) -> Floats:
+    """Return the standard normals of a trial's lag, amplitude and timescale, (3,)."""
+    return stream(setting.seed, "truth", prospect.forecast.name, trial).standard_normal(3)
 
 
 def draw_trial(setting: Setting, prospect: Prospect, trial: int) -> Draw:
@@ -134,42 +139,63 @@ def draw_trial(setting: Setting, prospect: Prospect, trial: int) -> Draw:
     forecast, simulation = prospect.forecast, setting.simulation
     name = forecast.name
     lag, amplitude, timescale, width = truth_of(setting, prospect, trial)
-    times = (
-        _all(n.best_mjd for n in prospect.continuum) - setting.first_night,
-        _all(n.best_mjd for n in prospect.line) - setting.first_night,
-    )
     disturbance = DISTURBANCES[setting.disturbance]
     driver = stream(setting.seed, "driver", name, trial)
-    x, y = draw_disturbed_pair(driver, *times, timescale, lag, width, disturbance)
-    scale = _by_feed(
-        prospect.line,
-        stream(setting.seed, "scale", name, trial).standard_normal(y.size),
+    x, y = draw_disturbed_pair(
+        driver, *_times(setting, prospect), timescale, lag, width, disturbance
     )
-    strangers = []
-    for number in range(UNRELATED):
-        other = stream(setting.seed, f"unrelated {number}", name, trial)
-        _, stranger = draw_pair(other, *times, timescale, lag, width)
-        strangers.append(
-            _measured(
-                setting,
-                prospect.line,
-                line_flux(stranger, amplitude, simulation.responsivity),
-                scale,
-                f"unrelated {number}",
-                name,
-                trial,
-            )
-        )
+    scale = _scale(setting, prospect, trial)
     light = continuum_flux(x, amplitude, forecast.agn_fraction)
-    echo = line_flux(y, amplitude, simulation.responsivity)
-    line = _measured(setting, prospect.line, echo, scale, "line", name, trial)
+    if setting.unrelated:
+        line = _stranger(setting, prospect, trial, UNRELATED)
+    else:
+        echo = line_flux(y, amplitude, simulation.responsivity)
+        line = _measured(setting, prospect.line, echo, scale, "line", name, trial)
     return Draw(
         lag_obs_d=lag,
         usable=sky_of_trial(setting, trial),
         continuum=_measured(setting, prospect.continuum, light, scale, "continuum", name, trial),
-        line=strangers.pop() if setting.unrelated else line,
-        unrelated=tuple(strangers),
+        line=line,
     )
+
+
+def draw_strangers(
+    setting: Setting, prospect: Prospect, trial: int
+) -> tuple[tuple[Measured, ...], ...]:
+    """Draw lines that vary like the trial's own line and know nothing of the continuum."""
+    return tuple(_stranger(setting, prospect, trial, number) for number in range(UNRELATED))
+
+
+def _stranger(
+    setting: Setting, prospect: Prospect, trial: int, number: int
+) -> tuple[Measured, ...]:
+    name, kind = prospect.forecast.name, f"unrelated {number}"
+    truth = truth_of(setting, prospect, trial)
+    _, echo = draw_pair(
+        stream(setting.seed, kind, name, trial),
+        *_times(setting, prospect),
+        truth.timescale_d,
+        truth.lag_d,
+        truth.width_d,
+    )
+    flux = line_flux(echo, truth.amplitude_mag, setting.simulation.responsivity)
+    scale = _scale(setting, prospect, trial)
+    return _measured(setting, prospect.line, flux, scale, kind, name, trial)
+
+
+def _times(setting: Setting, prospect: Prospect) -> tuple[Floats, Floats]:
+    """Return the times of all visits on offer, continuum and line, from the first night on."""
+    return (
+        _all(n.best_mjd for n in prospect.continuum) - setting.first_night,
+        _all(n.best_mjd for n in prospect.line) - setting.first_night,
+    )
+
+
+def _scale(setting: Setting, prospect: Prospect, trial: int) -> list[Floats]:
+    """Return what each night's spectra have in common, by telescope."""
+    nights = sum(n.night.size for n in prospect.line)
+    normal = stream(setting.seed, "scale", prospect.forecast.name, trial).standard_normal(nights)
+    return _by_feed(prospect.line, normal)
 
 
 def _all(parts: Iterable[Floats]) -> Floats:

@@ -41,7 +41,7 @@ class Example:
 def example_of(setting: Setting, prospect: Prospect, layout: Layout, table: TrialTable) -> Example:
     """Return the first trial that came out the way most trials of the layout did."""
     at = table.layouts.index(layout)
-    outcomes = table.reason[at]
+    outcomes = table.reason[at, : table.trials[at]]
     commonest = np.bincount(outcomes).argmax()
     trial = int(np.flatnonzero(outcomes == commonest)[0])
     placing = place_in(prospect, layout)

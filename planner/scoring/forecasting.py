@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass, replace
+from typing import NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
@@ -22,17 +23,33 @@ from planner.recovery import (
     fisher_forecast,
     make_design,
 )
-from planner.scoring.draws import Setting, sky_of_trial, truth_of
+from planner.recovery.information import with_normal_points
+from planner.scoring.draws import Setting, Truth, sky_of_trial, truth_of
 from planner.scoring.placing import place_in
 from planner.scoring.recovering import FEWEST_EPOCHS, search_of
-from planner.scoring.trials import nights_used
+from planner.scoring.trials import COSTS, Used, hours_of, nights_used
 
-__all__ = ["LayoutForecast", "ambiguity_of", "forecast_layout", "forecast_layouts"]
+__all__ = [
+    "LayoutForecast",
+    "ambiguity_of",
+    "design_of",
+    "forecast_layout",
+    "forecast_layouts",
+    "forecast_target",
+]
 
 Floats = NDArray[np.float64]
 
 DRAWS = 8
 """Draws of truth and weather for each layout."""
+
+
+BIN = 1.0 / 16.0
+"""Epochs are averaged over this share of the lag, the timescale or the span: variability on so
+short a time is smeared by the response and tells little of the lag."""
+
+TOGETHER = 12
+"""Layouts of one target in one task: they share the draws."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -45,37 +62,84 @@ class LayoutForecast:
     """Chance that a likelihood recovery that knows the walk and the response is narrow enough and
     right; trials fall short of it by what recovery must find out by itself."""
     error: float
-    """Median over draws of the least fractional error of the lag (Fisher information)."""
+    """Median over draws of the least fractional error of the lag (Fisher information), the walk
+    known as for `success`; where it is below one half, ignorance of the walk adds some per cent at
+    most."""
+    epochs_line: float
+    """Mean over draws, as what follows; 0 where the layout cannot be scheduled."""
+    epochs_continuum: float
+    hours: float
+    """Clock hours of both streams."""
+    hours_line: float
+    hours_shutter: float
+    """Exposures alone, both streams."""
+
+
+class _Draw(NamedTuple):
+    """What one trial draws that no layout has a part in."""
+
+    truth: Truth
+    usable: dict[str, NDArray[np.bool_]]
+
+
+def _draw(setting: Setting, prospect: Prospect, trial: int) -> _Draw:
+    return _Draw(truth_of(setting, prospect, trial), sky_of_trial(setting, trial))
 
 
 def forecast_layout(
     setting: Setting, prospect: Prospect, layout: Layout, draws: int = DRAWS
 ) -> LayoutForecast:
     """Return the forecast of one layout; 0 and infinite where it cannot be scheduled."""
+    return forecast_target(setting, prospect, [layout], draws)[0]
+
+
+def forecast_target(
+    setting: Setting, prospect: Prospect, layouts: Sequence[Layout], draws: int = DRAWS
+) -> list[LayoutForecast]:
+    """Return the forecasts of a target's layouts, in their order.
+
+    Truth and weather are drawn once for all; a layout's forecast does not depend on the others.
+    """
+    drawn = [_draw(setting, prospect, trial) for trial in range(draws)]
+    return [_forecast(setting, prospect, layout, drawn) for layout in layouts]
+
+
+def _forecast(
+    setting: Setting, prospect: Prospect, layout: Layout, drawn: Sequence[_Draw]
+) -> LayoutForecast:
     placing = place_in(prospect, layout)
-    name = prospect.forecast.name
+    target = prospect.forecast.name
     if placing.first.size == 0:
-        return LayoutForecast(name, layout, 0.0, np.inf)
-    designs = [design_of(setting, prospect, layout, trial) for trial in range(draws)]
-    usable = [d for d in designs if d.t1_d.size >= FEWEST_EPOCHS and d.t2_d.size >= FEWEST_EPOCHS]
+        return LayoutForecast(target, layout, 0.0, np.inf, **dict.fromkeys(COSTS, 0.0))
+    taken = [nights_used(prospect, layout, placing, draw.usable) for draw in drawn]
+    spent = [hours_of(prospect, used) for used in taken]
+    costs = {name: float(np.mean([one[name] for one in spent])) for name in COSTS}
+    designs = [
+        _design(setting, prospect, draw.truth, used)
+        for draw, used in zip(drawn, taken, strict=True)
+    ]
+    usable = [
+        with_normal_points(d, BIN)
+        for d in designs
+        if min(d.t1_d.size, d.t2_d.size) >= FEWEST_EPOCHS
+    ]
     if not usable:
-        return LayoutForecast(name, layout, 0.0, np.inf)
+        return LayoutForecast(target, layout, 0.0, np.inf, **costs)
     span = float(placing.last[-1] - placing.first[0])
     expected = expected_recovery(
         usable,
         *search_of(prospect, span),
         setting.success.within,
         setting.success.error_below,
-        stream(setting.seed, "forecast", name, str(layout)),
+        stream(setting.seed, "forecast", target, str(layout)),
     )
-    errors = [fisher_forecast(d).error_d / d.lag_d for d in usable]
-    return LayoutForecast(
-        name, layout, expected.success * len(usable) / draws, float(np.median(errors))
-    )
+    errors = [fisher_forecast(d, 0.0, 0.0).error_d / d.lag_d for d in usable]
+    success = expected.success * len(usable) / len(drawn)
+    return LayoutForecast(target, layout, success, float(np.median(errors)), **costs)
 
 
-def _forecast_one(task: tuple[Setting, Prospect, Layout]) -> LayoutForecast:
-    return forecast_layout(*task)
+def _forecast_some(task: tuple[Setting, Prospect, Sequence[Layout]]) -> list[LayoutForecast]:
+    return forecast_target(*task)
 
 
 def forecast_layouts(
@@ -87,25 +151,31 @@ def forecast_layouts(
     progress: Callable[[str, int, int], None],
 ) -> tuple[LayoutForecast, ...]:
     """Return every layout's information forecast, by target, the most promising first."""
-    tasks = [(setting, p, layout) for p in prospects for layout in layouts]
-    found: dict[int, LayoutForecast] = {}
-    for index, promise in each(_forecast_one, tasks, workers):
-        found[index] = promise
-        progress("forecast", len(found), len(tasks))
+    tasks = [
+        (setting, p, layouts[k : k + TOGETHER])
+        for p in prospects
+        for k in range(0, len(layouts), TOGETHER)
+    ]
+    found: list[LayoutForecast] = []
     order = {p.forecast.name: i for i, p in enumerate(prospects)}
+    place = {layout: i for i, layout in enumerate(layouts)}
+    for _, promises in each(_forecast_some, tasks, workers):
+        found += promises
+        progress("forecast", len(found), len(prospects) * len(layouts))
     return tuple(
-        sorted(
-            (found[i] for i in range(len(tasks))),
-            key=lambda f: (order[f.target], -f.success, f.error),
-        )
+        sorted(found, key=lambda f: (order[f.target], -f.success, f.error, place[f.layout]))
     )
 
 
 def design_of(setting: Setting, prospect: Prospect, layout: Layout, trial: int) -> Design:
     """Return epochs, errors and truth of one trial, as the information forecast takes them."""
-    truth = truth_of(setting, prospect, trial)
-    placing = place_in(prospect, layout)
-    used = nights_used(prospect, layout, placing, sky_of_trial(setting, trial))
+    draw = _draw(setting, prospect, trial)
+    used = nights_used(prospect, layout, place_in(prospect, layout), draw.usable)
+    return _design(setting, prospect, draw.truth, used)
+
+
+def _design(setting: Setting, prospect: Prospect, truth: Truth, used: Used) -> Design:
+    """Return the design of one draw of truth and nights."""
     (t1, e1), (t2, e2) = (
         [
             np.concatenate([getattr(n, name)[mine] for n, mine in zip(feeds, taken, strict=True)])

@@ -13,7 +13,7 @@ from planner.model.campaign import Layout
 from planner.model.sky import Season
 from planner.model.trial import FeedNights, Prospect
 
-__all__ = ["Placing", "place", "place_in"]
+__all__ = ["Placing", "by_year", "place", "place_in"]
 
 SHORT = 0.9
 """A season that holds less than this share of the wanted length is noted as cut short."""
@@ -43,8 +43,8 @@ def place(layout: Layout, seasons: Sequence[Season], line: FeedNights) -> Placin
 
     Of all runs of consecutive visible seasons, the run that holds the most of the wanted length is
     taken, the earliest of equals. Within a visible season the stretch with the most hours of
-    window is taken, the one nearest the middle of equals. A target visible for years on end has
-    one season a year.
+    window is taken, the one nearest the middle of equals; a layout's shift moves it, as far as the
+    visible season goes. A target visible for years on end has one season a year.
 
     Parameters
     ----------
@@ -55,7 +55,7 @@ def place(layout: Layout, seasons: Sequence[Season], line: FeedNights) -> Placin
         Nights on offer on the line's main telescope.
     """
     none = np.empty(0, dtype=np.int64)
-    seasons = _by_year(seasons)
+    seasons = by_year(seasons)
     if layout.seasons > len(seasons):
         return Placing(none, none, f"the campaign holds {_count(len(seasons))} of this target")
     wanted = round(layout.season_length_d)
@@ -63,7 +63,7 @@ def place(layout: Layout, seasons: Sequence[Season], line: FeedNights) -> Placin
     held = np.convolve(lengths, np.ones(layout.seasons, dtype=np.int64), mode="valid")
     start = int(np.argmax(held))
     chosen = seasons[start : start + layout.seasons]
-    spans = [_best_stretch(s, wanted, line) for s in chosen]
+    spans = [_shifted(_best_stretch(s, wanted, line), s, round(layout.shift_d)) for s in chosen]
     first = np.array([a for a, _ in spans], dtype=np.int64)
     last = np.array([b for _, b in spans], dtype=np.int64)
     shortest = int((last - first + 1).min())
@@ -71,7 +71,7 @@ def place(layout: Layout, seasons: Sequence[Season], line: FeedNights) -> Placin
     return Placing(first, last, note)
 
 
-def _by_year(seasons: Sequence[Season]) -> list[Season]:
+def by_year(seasons: Sequence[Season]) -> list[Season]:
     """Return the seasons, one that goes on for years cut into equal parts of about a year."""
     parts = []
     for s in seasons:
@@ -84,6 +84,12 @@ def _by_year(seasons: Sequence[Season]) -> list[Season]:
 
 def _count(seasons: int) -> str:
     return "one season" if seasons == 1 else f"{seasons} seasons"
+
+
+def _shifted(stretch: tuple[int, int], season: Season, nights: int) -> tuple[int, int]:
+    """Move a stretch within its visible season."""
+    nights = min(max(nights, season.first - stretch[0]), season.last - stretch[1])
+    return stretch[0] + nights, stretch[1] + nights
 
 
 def _best_stretch(season: Season, wanted: int, line: FeedNights) -> tuple[int, int]:

@@ -13,7 +13,7 @@ from planner.kernels.epochs import nights_taken
 from planner.model.campaign import Layout
 from planner.model.trial import FeedNights, Prospect
 from planner.recovery import joined
-from planner.scoring.draws import UNRELATED, Draw, Setting, draw_trial
+from planner.scoring.draws import UNRELATED, Draw, Measured, Setting, draw_strangers, draw_trial
 from planner.scoring.placing import Placing, place_in
 from planner.scoring.recovering import (
     REASONS,
@@ -25,8 +25,10 @@ from planner.scoring.recovering import (
 )
 
 __all__ = [
+    "COSTS",
     "Task",
     "Used",
+    "hours_of",
     "nights_used",
     "observe",
     "run_strangers",
@@ -108,7 +110,7 @@ class Task:
     schedule gave it in each of the trials."""
     first: int
     last: int
-    limits: tuple[float, ...] | None = None
+    limits: tuple[float, ...]
     """For each layout: correlation that a claim must exceed besides what the rule asks."""
 
 
@@ -151,12 +153,15 @@ def run_strangers(task: Task) -> dict[str, NDArray[np.float64]]:
     shape = (len(task.layouts), task.last - task.first, UNRELATED)
     peaks = np.full(shape, np.nan)
     detrend = task.setting.simulation.detrend
+    drawn: dict[int, tuple[tuple[Measured, ...], ...]] = {}
     for case in _cases(task):
         curves = observe(task.prospect, case.draw, case.used)
         if enough(curves):
+            if case.trial not in drawn:
+                drawn = {case.trial: draw_strangers(task.setting, task.prospect, case.trial)}
             strangers = [
                 observe(task.prospect, replace(case.draw, line=line), case.used).f_line
-                for line in case.draw.unrelated
+                for line in drawn[case.trial]
             ]
             found = peaks_of_strangers(
                 task.prospect, curves, strangers, case.span_d, detrend=detrend
@@ -165,11 +170,11 @@ def run_strangers(task: Task) -> dict[str, NDArray[np.float64]]:
     return {"r_unrelated": peaks}
 
 
+COSTS = ("epochs_line", "epochs_continuum", "hours", "hours_line", "hours_shutter")
+"""What a layout costs, clock and shutter; epochs and hours of both streams."""
+
 _LAGS = ("lag_true_d", "lag_d", "lag_lo_d", "lag_hi_d", "r_max")
-_COUNTS = (
-    "epochs_line", "epochs_continuum", "hours", "hours_line", "hours_shutter", "claim", "success",
-    "reason",
-)  # fmt: skip
+_COUNTS = (*COSTS, "claim", "success", "reason")
 
 
 def run_trials(task: Task) -> dict[str, NDArray[np.float64]]:
@@ -186,7 +191,7 @@ def run_trials(task: Task) -> dict[str, NDArray[np.float64]]:
     table["reason"][:] = REASONS.index("cannot be scheduled")
     for case in _cases(task):
         at = (case.layout, case.trial - task.first)
-        limit = -np.inf if task.limits is None else task.limits[case.layout]
+        limit = task.limits[case.layout]
         curves = observe(task.prospect, case.draw, case.used)
         found = recover(
             task.setting, task.prospect, curves, case.span_d, case.label, case.trial, limit
@@ -194,9 +199,8 @@ def run_trials(task: Task) -> dict[str, NDArray[np.float64]]:
         claim, success, reason = judge(found, case.draw.lag_obs_d, task.setting.success, limit)
         table["lag_true_d"][at] = case.draw.lag_obs_d
         table["claim"][at], table["success"][at], table["reason"][at] = claim, success, reason
-        table["epochs_continuum"][at] = curves.t_continuum.size
-        table["epochs_line"][at] = curves.t_line.size
-        _add_hours(table, at, task.prospect, case.used)
+        for name, value in hours_of(task.prospect, case.used).items():
+            table[name][at] = value
         if found is not None:
             table["lag_d"][at] = found.lag_d
             table["lag_lo_d"][at], table["lag_hi_d"][at] = found.lag_lo_d, found.lag_hi_d
@@ -204,14 +208,18 @@ def run_trials(task: Task) -> dict[str, NDArray[np.float64]]:
     return table
 
 
-def _add_hours(
-    table: dict[str, NDArray[np.float64]], at: tuple[int, int], prospect: Prospect, used: Used
-) -> None:
-    """Count the clock and shutter hours of the nights used."""
-    for kind, feeds, taken in (("", prospect.continuum, used[0]), ("line", prospect.line, used[1])):
+def hours_of(prospect: Prospect, used: Used) -> dict[str, float]:
+    """Return epochs, clock and shutter hours of the nights used, by the names of `COSTS`."""
+    costs = dict.fromkeys(COSTS, 0.0)
+    for kind, feeds, taken in (
+        ("continuum", prospect.continuum, used[0]),
+        ("line", prospect.line, used[1]),
+    ):
         for feed, mine in zip(feeds, taken, strict=True):
-            visits = np.count_nonzero(mine)
+            visits = float(np.count_nonzero(mine))
             hours = visits * (feed.visit_s + feed.standards_s) / 3600
-            table["hours"][at] += hours
-            table["hours_line"][at] += hours if kind == "line" else 0.0
-            table["hours_shutter"][at] += visits * feed.exposure_s / 3600
+            costs[f"epochs_{kind}"] += visits
+            costs["hours"] += hours
+            costs["hours_line"] += hours if kind == "line" else 0.0
+            costs["hours_shutter"] += visits * feed.exposure_s / 3600
+    return costs

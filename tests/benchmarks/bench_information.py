@@ -16,12 +16,13 @@ import numpy as np
 from planner.base.workers import each
 from planner.lightcurves import draw_pair
 from planner.recovery.expected import expected_recovery
-from planner.recovery.information import make_design
+from planner.recovery.information import make_design, with_normal_points
 from planner.recovery.posterior import Belief, lag_posterior
 from planner.recovery.response import Response
 
 LO_D, HI_D, WITHIN, ERROR_BELOW = 1.0, 100.0, 0.3, 0.3
 SIGMA, SCALE, TAU_D = 0.15, 0.6, 60.0
+BIN = 1.0 / 16.0
 BELIEF = Belief(TAU_D, 0.3, SIGMA, 0.2, SCALE, 0.15)
 
 
@@ -79,7 +80,8 @@ def compare(layouts, trials, first=0, show=print):
         layout = random_layout(rng)
         designs = [random_design(layout, rng) for _ in range(8)]
         start = time.perf_counter()
-        expected = expected_recovery(designs, LO_D, HI_D, WITHIN, ERROR_BELOW, rng)
+        merged = [with_normal_points(design, BIN) for design in designs]
+        expected = expected_recovery(merged, LO_D, HI_D, WITHIN, ERROR_BELOW, rng)
         spent += time.perf_counter() - start
         rate = np.mean([recovers(designs[j % 8], rng) for j in range(trials)])
         forecasts.append(expected.success)
@@ -92,7 +94,7 @@ def forecast(k):
     """Forecast one layout from eight draws."""
     rng = np.random.default_rng((21, k))
     layout = random_layout(rng)
-    designs = [random_design(layout, rng) for _ in range(8)]
+    designs = [with_normal_points(random_design(layout, rng), BIN) for _ in range(8)]
     return expected_recovery(designs, LO_D, HI_D, WITHIN, ERROR_BELOW, rng).success
 
 

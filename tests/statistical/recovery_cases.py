@@ -11,10 +11,11 @@ from pathlib import Path
 import numpy as np
 from scipy.stats import beta
 
+from planner.base.workers import Workers
 from planner.campaign.cuts import cuts_named
 from planner.model.campaign import Layout, SuccessRule
 from planner.model.sky import Season
-from planner.scoring import Job, Store, score_targets, setting_of
+from planner.scoring import Job, Store, Tools, score_jobs, setting_of
 
 USUAL = cuts_named("usual")
 ANY_LAG = SuccessRule(0.8, 0.3, np.inf, 0.0, -1e9)
@@ -69,14 +70,13 @@ def job_of(case, campaign, prospect, method, trials, resamples=100, rule=USUAL, 
     case_prospect = replace(
         prospect, forecast=forecast, line=(line,), continuum=(continuum,), seasons=visible
     )
-    return Job(setting, case_prospect, (layout,))
+    return Job(setting, case_prospect, layout, trials)
 
 
 def run(jobs, workers=1):
     """Return the tables of jobs."""
-    return score_targets(
-        jobs, workers=workers, store=Store(None), progress=lambda *_: None, label="trials"
-    )
+    with Workers(workers) as processes:
+        return score_jobs(jobs, Tools(processes, Store(None), lambda *_: None), "trials")
 
 
 def inside(table):

@@ -6,6 +6,9 @@ from pathlib import Path
 import pytest
 from scipy.stats import betabinom, binom
 
+from planner.scoring.draws import UNRELATED
+from planner.scoring.limits import TRIALS
+
 spec = importlib.util.spec_from_file_location(
     "coverage_of", Path(__file__).with_name("recovery_cases.py")
 )
@@ -26,10 +29,10 @@ def claims(campaign, prospect, case, method, trials, rule=coverage.USUAL):
 def most_by_correlation(trials):
     """Claims that chance exceeds once in a thousand times, at the allowed rate.
 
-    The limit is a quantile of two unrelated lines in each trial: how often a further line exceeds
-    it follows a beta distribution.
+    The limit is a quantile of known unrelated lines: how often a further line exceeds it follows
+    a beta distribution.
     """
-    known = 2 * trials
+    known = TRIALS * UNRELATED
     over = ALLOWED * known + 1
     return betabinom.ppf(1 - CHANCE, trials, over, known + 1 - over)
 

@@ -183,8 +183,8 @@ def test_the_smallest_file(tmp_path):
     assert campaign.name == "pilot"
     (line,), (continuum,) = campaign.line.feeds, campaign.continuum.feeds
     assert telescopes_of(campaign) == ("C19", "C05")
-    assert campaign.season_lengths_d == (60.0, 90.0, 120.0, 180.0)
-    assert campaign.seasons == (1, 2)
+    # Left to be generated for each target.
+    assert campaign.season_lengths_d == campaign.seasons == campaign.line.cadence_nights == ()
     # Signal-to-noise grows as the diameter: 100 on 0.5 m, and 30 x 1.9 / 2 (common practice).
     assert continuum.instrument.signal_to_noise == 100.0
     assert line.instrument.signal_to_noise == 28.5
@@ -232,6 +232,7 @@ def test_nothing_is_called_a_default_that_was_given(tmp_path):
         "sites.Low Fell.extinction", "streams.line.floor", "streams.line.exposures",
         "streams.line.read_out", "streams.line.standards", "streams.line.moon",
         "streams.continuum.also[1].longest_exposure", "relations.MgII", "success.agree",
+        "streams.line.deepen", "streams.continuum.deepen", "season_shifts",
         *(f"telescopes.{name}.{key}" for name in ("F04", "F05")
           for key in ("slew", "acquisition", "obstruction", "technical_loss")),
     }  # fmt: skip
@@ -257,15 +258,24 @@ def test_a_continuum_from_spectra_needs_no_telescope(tmp_path):
     campaign = read(tmp_path, text).campaign
     assert campaign.continuum.feeds == ()
     assert campaign.continuum.in_spectra
-    pairs = {(la.cadence_line_nights, la.cadence_continuum_nights) for la in campaign.layouts()}
-    assert pairs == {(2.0, 2.0), (5.0, 5.0)}
+    assert campaign.continuum.cadence_nights == campaign.line.cadence_nights == (2.0, 5.0)
 
 
-def test_usual_candidates_shrink_with_the_campaign(tmp_path):
-    campaign = read(tmp_path, SMALLEST.replace("2028-10-31", "2027-03-10")).campaign
-    assert campaign.season_lengths_d == (10.0,)
-    assert campaign.line.cadence_nights == (3.0, 5.0, 8.0)
-    assert campaign.seasons == (1,)
+def test_candidates_may_be_left_to_the_planner_in_so_many_words(tmp_path):
+    text = SMALLEST + "season_lengths: auto\nseasons: auto\nstreams: {line: {cadence: auto}}\n"
+    reading = read(tmp_path, text)
+    assert reading.campaign == read(tmp_path, SMALLEST).campaign
+    assert not {"season_lengths", "seasons", "streams.line.cadence"} & {
+        d.key for d in reading.defaults
+    }
+
+
+def test_shifts_and_exposures_to_try(tmp_path):
+    text = SMALLEST + "season_shifts: [30 d, -30 d, 0 d]\nstreams: {line: {deepen: [2, 0.5, 1]}}\n"
+    campaign = read(tmp_path, text).campaign
+    assert campaign.season_shifts_d == (-30.0, 0.0, 30.0)
+    assert campaign.line.deepen == (0.5, 1.0, 2.0)
+    assert campaign.continuum.deepen == (1.0,)
 
 
 @pytest.mark.parametrize(

@@ -17,6 +17,8 @@ def scenario(name, success, claim=None, decision="observe"):
     table = TrialTable(
         "One",
         (LAYOUT,),
+        np.array([success.shape[1]]),
+        0,
         nan,
         nan,
         nan,
@@ -33,7 +35,7 @@ def scenario(name, success, claim=None, decision="observe"):
     )
     share = float(success.mean())
     score = Score(
-        "One", LAYOUT, 9, 9, share, share, share, share, 0, 0, 0, 12.5, 6, 4, success.size, ""
+        "One", LAYOUT, 0.9, 9, 9, share, share, share, share, 0, 0, 0, 12.5, 6, 4, success.size, ""
     )
     return Scenario(name, (table,), (Recommendation("One", decision, score, "", ()),))
 

@@ -3,10 +3,15 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
-from planner.kernels.joint_forecast import log_likelihoods
+from planner.kernels.products import inverse_factor, product
 from planner.recovery.ambiguity import ambiguity
 from planner.recovery.expected import expected_recovery
-from planner.recovery.information import fisher_forecast, knapp_carter_error, make_design
+from planner.recovery.information import (
+    fisher_forecast,
+    knapp_carter_error,
+    make_design,
+    with_normal_points,
+)
 from planner.recovery.joint import joint_log_likelihood, make_pair
 from planner.recovery.response import Response, cross_covariance, line_covariance
 
@@ -126,44 +131,96 @@ def test_a_gap_makes_lags_ambiguous():
     assert ambiguity(one, [170.0]).divergence[0] < 0.1 * ambiguity(near, [8.0]).divergence[0]
 
 
-def test_kernel_agrees_with_dense_algebra():
-    rng = np.random.default_rng(2)
-    white, white0 = 0.1 * rng.standard_normal((2, 12, 6))
-    line, err = np.eye(6) + 0.3, rng.uniform(0.2, 0.4, 6)
-    normals, noise = rng.standard_normal((12, 3)), rng.standard_normal((6, 3))
-    offsets = 0.1 * rng.standard_normal((2, 6))
-    found = log_likelihoods(white, white0, offsets, line, err, 0.8, normals, noise, 2.0)
-    unit = line - white.T @ white + offsets.T @ offsets
-    covariance = 0.64 * unit + np.diag(err**2)
-    for c in range(3):
-        column = 0.8 * white.T @ normals[:, c]
-        # The offset's flat prior as a wide one; the ratio of its density to 1 is put back.
-        wide = covariance + np.outer(column, column) / 2.0 + 1e6
-        rest = 0.8 * (white0 - white).T @ normals[:, c] + noise[:, c]
-        expected = -0.5 * (rest @ np.linalg.solve(wide, rest) + np.linalg.slogdet(wide)[1])
-        assert found[c] == pytest.approx(expected + 0.5 * np.log(1e6), abs=1e-4)
+def joint_blocks(one, lag, tau, width_lag):
+    response = replace(one.response, width=one.response.width * width_lag / lag)
+    own = np.exp(-np.abs(one.t1_d[:, None] - one.t1_d) / tau)
+    cross = cross_covariance(one.t1_d, one.t2_d, [lag], tau, response)[0]
+    line = line_covariance(one.t2_d, [lag], tau, response)[0]
+    return own, cross, line
 
 
-def test_expected_recovery_tells_good_from_bad():
-    settings = (1.0, 40.0, 0.3, 0.3)
-    good = [design(60, 25, error=0.004, seed=k) for k in range(2)]
-    bad = [design(20, 9, error=0.3, seed=k) for k in range(2)]
-    high = expected_recovery(good, *settings, np.random.default_rng(0), 8)
-    low = expected_recovery(bad, *settings, np.random.default_rng(0), 8)
-    assert high.success > 0.7
-    assert low.success < 0.2
-    assert high.simulations == 16
-    assert high.success <= min(high.claims, high.right)
-    again = expected_recovery(good, *settings, np.random.default_rng(0), 8)
-    assert again == high
+def joint_covariance(one, lag, sigma, tau, scale):
+    """Dense covariance of both curves without errors; the width stays that of the truth."""
+    own, cross, line = joint_blocks(one, lag, tau, one.lag_d)
+    return sigma**2 * np.block([[own, scale * cross], [scale * cross.T, scale**2 * line]])
 
 
-def test_a_prior_helps():
-    bad = [design(20, 9, error=0.15, seed=k) for k in range(3)]
-    settings = (1.0, 40.0, 0.3, 0.3, np.random.default_rng(0), 8)
-    tight = expected_recovery(bad, *settings, prior=lambda lag: np.exp(-0.5 * (lag - 10) ** 2))
-    assert tight.success == 1.0
-    assert expected_recovery(bad, *settings).success < 0.9
+@pytest.mark.parametrize("telescopes", [1, 2])
+@pytest.mark.parametrize("offsets_known", [False, True])
+def test_information_agrees_with_the_dense_joint_form(telescopes, offsets_known):
+    """1/2 tr(P C_i P C_j) from dense matrices of both curves, derivatives by differences."""
+    labels = np.arange(20) % telescopes
+    one = replace(design(), offsets=(labels[:, None] == np.arange(telescopes)).astype(float))
+    truth = np.array([one.lag_d, one.sigma, one.tau_d, one.scale])
+    slopes = []
+    for k in range(4):
+        step = np.zeros(4)
+        step[k] = 1e-5 * truth[k]
+        slope = joint_covariance(one, *(truth + step)) - joint_covariance(one, *(truth - step))
+        slopes.append(slope / (2e-5 * (truth[k] if k == 0 else 1.0)))
+    covariance = joint_covariance(one, *truth) + np.diag(np.concatenate([one.e1, one.e2]) ** 2)
+    columns = np.zeros((29, telescopes + 1))
+    columns[:20, :telescopes], columns[20:, telescopes] = one.offsets, 1.0
+    inverse = np.linalg.inv(covariance)
+    if not offsets_known:
+        solved = inverse @ columns
+        inverse = inverse - solved @ np.linalg.solve(columns.T @ solved, solved.T)
+    products = [inverse @ slope for slope in slopes]
+    expected = np.array([[0.5 * np.trace(a @ b) for b in products] for a in products])
+    found = fisher_forecast(one, offsets_known=offsets_known).matrix
+    size = np.sqrt(np.diag(expected))
+    np.testing.assert_allclose(
+        found / np.outer(size, size), expected / np.outer(size, size), atol=1e-6
+    )
+
+
+def test_a_known_walk_does_not_touch_the_rest():
+    full, known = fisher_forecast(design()), fisher_forecast(design(), 0.0, 0.0)
+    assert known.matrix[0, 3] == pytest.approx(full.matrix[0, 3], rel=1e-12)
+    assert known.matrix[3, 3] == pytest.approx(full.matrix[3, 3], rel=1e-12)
+    assert np.isinf(known.matrix[[1, 2], [1, 2]]).all()
+    assert full.error_known_d <= known.error_d <= full.error_d
+
+
+@pytest.mark.parametrize(("p", "q", "n"), [(1, 1, 1), (4, 8, 5), (7, 6, 3), (13, 5, 40)])
+def test_products_agree_with_numpy(p, q, n):
+    rng = np.random.default_rng(p)
+    a, b = rng.standard_normal((p, n)), rng.standard_normal((q, n))
+    np.testing.assert_allclose(product(a, b), a @ b.T, rtol=1e-12, atol=1e-12)
+
+
+@pytest.mark.parametrize("m", [1, 4, 11])
+def test_inverse_factor_agrees_with_numpy(m):
+    a = np.random.default_rng(m).standard_normal((m, m + 2))
+    a = a @ a.T
+    expected = np.linalg.inv(np.linalg.cholesky(a))
+    np.testing.assert_allclose(inverse_factor(a), expected, rtol=1e-8, atol=1e-10)
+    assert np.isnan(inverse_factor(-a)).all()
+
+
+def test_normal_points_are_weighted_means_by_telescope():
+    t1 = np.array([0.0, 0.4, 0.6, 5.0, 9.0])
+    one = make_design(
+        t1, [0.1, 0.2, 0.1, 0.1, 0.3], t1, 0.2, 10.0, 1.0, 30.0, 1.0, HALF, [0, 0, 1, 1, 0]
+    )
+    found = with_normal_points(one, 1.0 / 9.0)  # bins of a ninth of the span of 9 d
+    np.testing.assert_allclose(found.t1_d, [0.08, 0.6, 5.0, 9.0])
+    np.testing.assert_allclose(found.e1, [(1 / 0.01 + 1 / 0.04) ** -0.5, 0.1, 0.1, 0.3])
+    np.testing.assert_array_equal(found.offsets[:, 0], [1, 0, 0, 1])
+    np.testing.assert_allclose(found.t2_d, [1.0 / 3.0, 5.0, 9.0])
+    assert found.e2[0] == pytest.approx(0.2 / 3**0.5)
+    apart = with_normal_points(one, 1e-3)
+    np.testing.assert_allclose(apart.t1_d, one.t1_d, rtol=1e-14)
+    np.testing.assert_allclose(apart.e1, one.e1)
+
+
+def test_normal_points_keep_the_information():
+    t = np.arange(0.0, 180.0)
+    one = make_design(t, 0.05, t[::2], 0.05, 40.0, 0.2, 100.0, 0.7, HALF)
+    few = with_normal_points(one, 1.0 / 16.0)
+    assert few.t1_d.size < 0.5 * one.t1_d.size
+    ratio = fisher_forecast(few, 0.0, 0.0).error_d / fisher_forecast(one, 0.0, 0.0).error_d
+    assert ratio == pytest.approx(1.0, abs=0.03)
 
 
 @pytest.mark.parametrize("change", ["one epoch", "NaN", "no lag", "no walk"])

@@ -8,14 +8,16 @@ import pytest
 from planner.model.campaign import Layout
 from planner.model.plan import SiteSky
 from planner.model.trial import Score
+from planner.pipeline import tools_with
 from planner.report import example_figure, png, success_figure, visibility_figure
-from planner.scoring import Job, Store, example_of, score_targets, setting_of
+from planner.scoring import Job, example_of, score_jobs, setting_of
 from planner.sky import nights_at, windows_of
 
 
 def score(cadence, length, success, trials=100):
     return Score(
-        target="One", layout=Layout(cadence, 1, length, 1), epochs_line=20, epochs_continuum=60,
+        target="One", layout=Layout(cadence, 1, length, 1), promise=0.9, epochs_line=20,
+        epochs_continuum=60,
         success=success, success_lo=success, success_hi=success, claims=success, false_claims=0,
         false_claims_lo=0, false_claims_hi=0, hours=10, hours_line=5, hours_shutter=4,
         trials=trials, note="",
@@ -73,10 +75,8 @@ def test_the_visibility_chart_has_a_row_per_target(campaign, site):
 def test_the_example_is_drawn_even_when_no_lag_was_looked_for(campaign, prospect, few):
     setting = setting_of(campaign)
     layout = Layout(150 if few else 3, 1, 120, 1)
-    (table,) = score_targets(
-        [Job(setting, prospect, (layout,))],
-        workers=1, store=Store(None), progress=lambda *_: None, label="",
-    )  # fmt: skip
+    with tools_with() as tools:
+        (table,) = score_jobs([Job(setting, prospect, layout, 8)], tools, "trials")
     example = example_of(setting, prospect, layout, table)
     assert (example.result is None) == few
     figure = example_figure(example)

@@ -3,8 +3,9 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
+from planner.base.workers import Workers
 from planner.model.campaign import Layout
-from planner.scoring import REASONS, Job, Store, score_targets, scores_of, setting_of
+from planner.scoring import REASONS, Job, Store, Tools, score_jobs, score_of, setting_of
 from planner.scoring.draws import draw_trial, sky_of_trial
 from planner.scoring.recovering import Found, judge
 from planner.scoring.trials import Task, nights_used, run_trials
@@ -17,9 +18,9 @@ def setting(campaign):
     return setting_of(campaign)
 
 
-def run(jobs, **options):
-    options = {"workers": 1, "store": Store(None), "progress": lambda *_: None} | options
-    return score_targets(jobs, label="trials", **options)
+def run(jobs, workers=1, store=None, progress=lambda *_: None):
+    with Workers(workers) as processes:
+        return score_jobs(jobs, Tools(processes, store or Store(None), progress), "trials")
 
 
 def result(**values):
@@ -56,8 +57,8 @@ def test_claims_and_successes_are_kept_apart(campaign, found, truth, claim, succ
 
 
 def test_the_same_draws_serve_every_layout(setting, prospect):
-    both = run_trials(Task(setting, prospect, LAYOUTS, None, 0, 3))
-    alone = run_trials(Task(setting, prospect, LAYOUTS[1:], None, 0, 3))
+    both = run_trials(Task(setting, prospect, LAYOUTS, None, 0, 3, (-np.inf,) * 2))
+    alone = run_trials(Task(setting, prospect, LAYOUTS[1:], None, 0, 3, (-np.inf,)))
     for name, column in alone.items():
         assert np.array_equal(column[0], both[name][1], equal_nan=True), name
     assert np.array_equal(both["lag_true_d"][0], both["lag_true_d"][1])
@@ -101,23 +102,23 @@ def test_an_easy_target_succeeds_and_a_noisy_one_does_not(campaign, prospect):
     lively = replace(prospect.forecast, lag_obs_d=8.0, amplitude_mag=0.4, timescale_obs_d=60.0)
     easy = replace(prospect, forecast=lively)
     noisy = replace(easy, line=(replace(prospect.line[0], flux_error=np.full(181, 1.0)),))
-    good, bad = run([Job(setting, easy, LAYOUTS[:1]), Job(setting, noisy, LAYOUTS[:1])])
-    assert scores_of(easy, good)[0].success > 0.7
-    assert scores_of(noisy, bad)[0].success < 0.3
+    good, bad = run([Job(setting, p, LAYOUTS[0], 20) for p in (easy, noisy)])
+    assert score_of(easy, good).success > 0.7
+    assert score_of(noisy, bad).success < 0.3
 
 
 def test_a_layout_that_cannot_be_is_said_and_not_tried(setting, prospect):
     layout = Layout(3, 1, 60, 2)
-    table = run([Job(setting, prospect, (layout,))])[0]
-    score = scores_of(prospect, table)[0]
+    (table,) = run([Job(setting, prospect, layout, 5)])
+    score = score_of(prospect, table)
     assert score.trials == 0
     assert score.note == "the campaign holds one season of this target"
-    assert (score.success, score.hours) == (0, 0)
+    assert (score.success, score.success_hi, score.hours) == (0, 0, 0)
 
 
 def test_hours_are_visits_times_their_length(setting, prospect):
-    table = run([Job(setting, prospect, LAYOUTS)])[0]
-    for score in scores_of(prospect, table):
+    for table in run([Job(setting, prospect, layout, 5) for layout in LAYOUTS]):
+        score = score_of(prospect, table)
         hours = score.epochs_line * 0.5 + score.epochs_continuum * 420 / 3600
         assert score.hours == pytest.approx(hours)
 
@@ -125,18 +126,17 @@ def test_hours_are_visits_times_their_length(setting, prospect):
 def test_kept_results_are_used_again(tmp_path, setting, prospect):
     seen = []
     store = Store(tmp_path / "kept")
-    first = run([Job(setting, prospect, LAYOUTS)], store=store)[0]
-    again = run([Job(setting, prospect, LAYOUTS)], store=store, progress=lambda *a: seen.append(a))[
-        0
-    ]
-    assert seen == [("trials", 1, 1)]
+    job = Job(setting, prospect, LAYOUTS[0], 25)
+    (first,) = run([job], store=store)
+    (again,) = run([job], store=store, progress=lambda *a: seen.append(a[:3]))
+    assert seen[-1] == ("trials", 3, 3)
+    assert all(done == total for _, done, total in seen)
     assert np.array_equal(first.lag_d, again.lag_d, equal_nan=True)
 
 
 @pytest.mark.slow
 def test_two_workers_give_the_same_bytes(setting, prospect):
-    setting = replace(setting, simulation=replace(setting.simulation, trials=25))
-    one = run([Job(setting, prospect, LAYOUTS)], workers=1)[0]
-    two = run([Job(setting, prospect, LAYOUTS)], workers=2)[0]
-    for name in ("lag_d", "lag_lo_d", "r_max", "epochs_line", "claim", "reason"):
-        assert getattr(one, name).tobytes() == getattr(two, name).tobytes(), name
+    jobs = [Job(setting, prospect, layout, 25) for layout in LAYOUTS]
+    for one, two in zip(run(jobs), run(jobs, workers=2), strict=True):
+        for name in ("lag_d", "lag_lo_d", "r_max", "epochs_line", "claim", "reason"):
+            assert getattr(one, name).tobytes() == getattr(two, name).tobytes(), name
