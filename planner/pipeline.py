@@ -9,7 +9,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
-from contextlib import contextmanager
+from contextlib import contextmanager, suppress
 from dataclasses import replace
 from pathlib import Path
 from typing import Any
@@ -17,7 +17,7 @@ from typing import Any
 import numpy as np
 
 from planner.agn import forecast, relation_names
-from planner.base.errors import PlanError
+from planner.base.errors import InputError, PlanError
 from planner.base.provenance import file_hashes, planner_version, versions
 from planner.base.timescale import UT1_NOTE
 from planner.base.workers import Workers
@@ -26,7 +26,7 @@ from planner.model.campaign import Campaign, Layout
 from planner.model.plan import Plan, Recommendation, SiteSky
 from planner.model.target import Forecast
 from planner.model.trial import Offer, Prospect, Score
-from planner.recommend import advise, hardened
+from planner.recommend import advise, hardened, lists_of, sensitivities_of
 from planner.schedule import (
     Request,
     assign,
@@ -97,6 +97,20 @@ def forecast_targets(campaign: Campaign) -> tuple[Forecast, ...]:
         )
         for target in campaign.targets
     )
+
+
+def other_forecasts(campaign: Campaign, index: int) -> list[Forecast]:
+    """Return what the other relations of a target's line expect; none where the lag is given."""
+    target = campaign.targets[index]
+    alone = replace(campaign, targets=(target,))
+    (expected,) = forecast_targets(alone)
+    found: list[Forecast] = []
+    for key in relation_names().get(expected.line, ()):
+        if target.lag_rest_d is None and key != expected.relation:
+            # One relation needs the target's iron strength.
+            with suppress(InputError):
+                found += forecast_targets(replace(alone, relations=((expected.line, key),)))
+    return found
 
 
 def continuum_band(campaign: Campaign) -> str:
@@ -176,6 +190,16 @@ def make_plan(reading: Reading, tools: Tools) -> Plan:
         scores=tuple(s for r in raced for s in raced_scores(r)),
         recommendations=advice,
         opinions=opinions,
+        sensitivities={
+            a.target: sensitivities_of(
+                setting, other_forecasts(campaign, i), prospects[i], a.score.layout, raced[i].table
+            )
+            for i, a in enumerate(advice)
+            if a.scheduled and a.score
+        },
+        subsets=lists_of(
+            campaign, raced, [a.score if a.scheduled else None for a in advice], hours=None
+        ),
         visits=tuple(visits),
         unplaced=tuple(unplaced),
         time_spent=time_spent(campaign, visits, dark_hours(skies)),

@@ -29,6 +29,10 @@ def write_plan(plan: Plan, reading: Reading, folder: Path) -> None:
         "epochs": export.epochs_table(plan.prospects),
         "time": export.time_table(plan.time_spent),
         "opinions": export.opinions_table(plan.opinions),
+        "limits": export.causes_table(plan.recommendations),
+        "helps": export.helps_table(plan.recommendations),
+        "sensitivity": export.sensitivity_table(plan.sensitivities),
+        "lists": export.subsets_table(plan.subsets),
     }
     for name, table in tables.items():
         export.write_ecsv(table, folder / f"{name}.ecsv")

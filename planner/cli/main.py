@@ -101,6 +101,12 @@ def _parser() -> argparse.ArgumentParser:
                 action="store_true",
                 help="no trials: rank the layouts by the information in their epochs, in seconds",
             )
+            command.add_argument(
+                "--hours",
+                type=_hours,
+                metavar="N",
+                help="also find the list of targets with the most lags for so many clock hours",
+            )
     compare = commands.add_parser(
         "compare",
         help="scenarios side by side",
@@ -171,6 +177,16 @@ def _count(text: str) -> int:
     if not text.isdecimal() or int(text) < 1:
         raise argparse.ArgumentTypeError(f"found {text!r}; expected a whole number of at least 1")
     return int(text)
+
+
+def _hours(text: str) -> float:
+    try:
+        hours = float(text)
+    except ValueError:
+        hours = -1.0
+    if not 0.0 <= hours < 1e6:
+        raise argparse.ArgumentTypeError(f"found {text!r}; expected hours from 0, such as 120")
+    return hours
 
 
 def _seed(text: str) -> int:

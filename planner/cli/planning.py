@@ -24,6 +24,7 @@ if TYPE_CHECKING:
     from collections.abc import Sequence
 
     from planner.model.campaign import Campaign
+    from planner.model.plan import Subset
     from planner.model.trial import Offer
     from planner.scoring import Tools
 
@@ -33,6 +34,7 @@ __all__ = ["compare", "plan", "schedule", "score"]
 def score(options: Namespace) -> int:
     """Print every layout's chance of success for every target."""
     from planner import export, pipeline
+    from planner.recommend import lists_of
     from planner.scoring import observe_sky, raced_scores
 
     reading = read(options)
@@ -46,7 +48,12 @@ def score(options: Namespace) -> int:
             return _forecast(options, campaign, offers, tools, folder)
         raced = pipeline.race_all(campaign, offers, tools)
     flat = [s for r in raced for s in raced_scores(r)]
-    if give(options, folder, {"scores": export.scores_table(flat)}):
+    tables = {"scores": export.scores_table(flat)}
+    lists: tuple[Subset, ...] = ()
+    if options.hours is not None:
+        lists = lists_of(campaign, raced, [], options.hours)
+        tables["lists"] = export.subsets_table(lists)
+    if give(options, folder, tables):
         return 0
     rows = [
         [
@@ -82,6 +89,12 @@ def score(options: Namespace) -> int:
         "note",
     ]
     say(table_text(header, rows))
+    for best in lists:
+        names = ", ".join(name for name, _ in best.chosen) or "none"
+        say(
+            f"\nBest list for {best.hours:g} clock hours: {names}; {best.lags:.1f} right lags "
+            f"({best.lags_lo:.0f} to {best.lags_hi:.0f}), {best.spent:.0f} h spent"
+        )
     return 0
 
 
@@ -202,6 +215,14 @@ def plan(options: Namespace) -> int:
     )
     for r in made.recommendations:
         say(f"\n{r.target}: {r.why}.")
+        if r.causes:
+            wants = "; ".join(f"{c.want} ({c.share:.0%})" for c in r.causes[:3])
+            say(f"  failed trials want {wants}.")
+        for rank, h in enumerate(r.helps[:3], start=1):
+            say(
+                f"  {rank}. {h.change}: {h.gain:+.0%} ({h.gain_lo:+.0%} to {h.gain_hi:+.0%}) for "
+                f"{h.hours:+.0f} h"
+            )
     missing = sum(u.wanted - u.placed for u in made.unplaced)
     if missing:
         say(f"\n{missing} wanted visits find no room in the telescopes' time; see the report")

@@ -5,6 +5,12 @@ units and descriptions, readable by ``astropy.table.QTable.read`` and by pandas;
 also plain CSV. Times are UTC.
 """
 
+from planner.export.advice_tables import (
+    causes_table,
+    helps_table,
+    sensitivity_table,
+    subsets_table,
+)
 from planner.export.depth_tables import epochs_table, opinions_table, time_table
 from planner.export.run_record import run_json
 from planner.export.tables import (
@@ -20,8 +26,10 @@ from planner.export.write import as_rows, write_csv, write_ecsv
 
 __all__ = [
     "as_rows",
+    "causes_table",
     "epochs_table",
     "forecast_table",
+    "helps_table",
     "lags_table",
     "opinions_table",
     "recommendation_table",
@@ -29,6 +37,8 @@ __all__ = [
     "schedule_table",
     "scores_table",
     "seasons_table",
+    "sensitivity_table",
+    "subsets_table",
     "time_table",
     "windows_table",
     "write_csv",

@@ -58,6 +58,23 @@ class Cause:
 
 
 @dataclass(frozen=True, slots=True)
+class Sensitivity:
+    """Success of a layout where one factor is held and the others are as they may be."""
+
+    factor: str
+    """``lag``, ``amplitude``, ``timescale``, ``weather`` or ``relation``."""
+    level: str
+    """Of the factor's 10th, 50th and 90th percentile; or the relation's key."""
+    value: float
+    """Standard normal deviate of the logarithm; usable nights; or the relation's lag in days."""
+    success: float
+    success_lo: float
+    success_hi: float
+    """Both ends hold together with 90 % confidence; NaN, as `success`, where the trials made say
+    nothing of this value."""
+
+
+@dataclass(frozen=True, slots=True)
 class Subset:
     """The targets that give the most lags for a number of clock hours, each with a layout."""
 
@@ -173,6 +190,10 @@ class Plan:
     scores: tuple[Score, ...]
     recommendations: tuple[Recommendation, ...]
     opinions: tuple[Opinion, ...]
+    sensitivities: dict[str, tuple[Sensitivity, ...]]
+    """By target, of the recommended layout."""
+    subsets: tuple[Subset, ...]
+    """Best lists of targets for several numbers of hours, ascending."""
     visits: tuple[Visit, ...]
     unplaced: tuple[Unplaced, ...]
     time_spent: tuple[TimeSpent, ...]

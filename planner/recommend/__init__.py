@@ -7,5 +7,15 @@ whose success reaches the goal with 90 % confidence.
 
 from planner.recommend.advise import advise, advise_without_help
 from planner.recommend.choose import choose, hardened, recommend
+from planner.recommend.lists import lists_of
+from planner.recommend.sensitive import sensitivities_of
 
-__all__ = ["advise", "advise_without_help", "choose", "hardened", "recommend"]
+__all__ = [
+    "advise",
+    "advise_without_help",
+    "choose",
+    "hardened",
+    "lists_of",
+    "recommend",
+    "sensitivities_of",
+]

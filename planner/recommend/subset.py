@@ -61,10 +61,9 @@ class LagsDistribution:
 
     mean: float
     lo10: int
-    """Smallest number that is not exceeded in at least 10 % of campaigns."""
+    """Percentiles: smallest number not exceeded in at least 10, 50 and 90 % of campaigns."""
     median: int
     hi90: int
-    """Smallest number that is not exceeded in at least 90 % of campaigns."""
     probabilities: tuple[float, ...]
     """Of 0, 1, 2... lags."""
 
@@ -72,9 +71,9 @@ class LagsDistribution:
 def best_subset(options: Sequence[Option], budgets: Sequence[float]) -> tuple[int, ...]:
     """Return the indices of the options that together give the most lags within the budgets.
 
-    At most one option per target. Of subsets with equal sums the one with the fewest hours in sum
-    over all resources is taken, then the one with the earlier targets and their earlier options.
-    Lags and hours are counted in decimal units, to a billionth of all there are to be had.
+    At most one option per target, and none that is worth nothing. Of subsets with equal sums the
+    one with the fewest hours over all resources is taken, then the one with the earlier targets and
+    their earlier options. Lags and hours are counted to a billionth of all there are to be had.
 
     Parameters
     ----------
@@ -94,19 +93,16 @@ def best_subset(options: Sequence[Option], budgets: Sequence[float]) -> tuple[in
     Notes
     -----
     A multiple-choice knapsack with several limits. At given prices of the resources each option is
-    worth its lags less the price of its hours, and no subset within the budgets gives more than
-    the price of all hours granted and each target's best worth together. The prices where this
-    bound is lowest are those of the linear relaxation; an option's loss is what it is worth less
-    than its target's best. All subsets that can come within some lags of the bound are built up
-    target by target: those go on that none dominates and that still can, judged at those prices
-    and at others around them. Then the lags conceded are raised until the best subset found falls
-    no further short: none left out can be better. (Pruned dynamic programming over an expanding
-    core: Pisinger 1995, Eur. J. Oper. Res. 83, 394; Nemhauser and Ullmann 1969, Manag. Sci. 15,
-    494; from memory.) With one or two resources this is exact in practice; should more than
-    `MOST_STATES` subsets compete, the most promising go on, and `Yield.short` bounds what is lost.
-
-    A general integer programme takes some ten times as long, knows ties only within its
-    tolerances, and HiGHS prints lines to stdout that cannot be switched off.
+    worth its lags less the price of its hours, and no subset gives more than each target's best
+    worth and the price of all hours granted together; this bound is lowest at the prices of the
+    linear relaxation. All subsets that can come within some lags of the bound are built up target
+    by target: those go on that none dominates and that still can, at those prices and at others
+    around them. The lags conceded are raised until the best subset found falls no further short:
+    none left out can be better. (Pruned dynamic programming over an expanding core: Pisinger 1995,
+    Eur. J. Oper. Res. 83, 394; Nemhauser and Ullmann 1969, Manag. Sci. 15, 494; from memory.) With
+    one or two resources this is exact in practice; should more than `MOST_STATES` subsets compete,
+    the most promising go on, and `Yield.short` bounds what is lost. A general integer programme
+    takes longer, and HiGHS prints lines to stdout that cannot be switched off.
     """
     return _solve(options, budgets).chosen
 
@@ -130,30 +126,22 @@ class _Core:
     cost: NDArray[np.int64]
     """(options, limited resources), in `UNIT_H`."""
     loss: NDArray[np.float64]
+    value: NDArray[np.float64]
     best: NDArray[np.float64]
     """Loss of leaving a target out, (targets,)."""
     budget: NDArray[np.int64]
     price: NDArray[np.float64]
     """Lags per unit of each limited resource."""
     bound: float
-    """The relaxation's sum."""
-    value: NDArray[np.float64]
+    """What no subset exceeds."""
 
 
 def _solve(options: Sequence[Option], budgets: Sequence[float]) -> Yield:
     value, cost, limit = _checked(options, budgets)
-    chosen: NDArray[np.int64] = np.zeros(0, dtype=np.int64)
-    short = 0.0
     core = _core(options, value, cost, limit)
-    if core is not None:
-        chosen, short = _search(core)
-    return Yield(
-        tuple(float(b) for b in limit),
-        tuple(int(i) for i in chosen),
-        float(value[chosen].sum()),
-        tuple(float(c) for c in cost[chosen].sum(axis=0)),
-        short,
-    )
+    chosen, short = _search(core) if core else (np.zeros(0, dtype=np.int64), 0.0)
+    lags, costs = float(value[chosen].sum()), cost[chosen].sum(axis=0)
+    return Yield(tuple(limit.tolist()), tuple(chosen.tolist()), lags, tuple(costs.tolist()), short)
 
 
 def _checked(
@@ -173,8 +161,8 @@ def _checked(
                 f"{o.target}: costs {o.costs} or weight {o.weight} negative or infinite"
             )
     value = np.array([o.weight * o.success for o in options], dtype=float)
-    cost = np.array([o.costs for o in options], dtype=float).reshape(len(options), len(limit))
-    return value, cost, limit
+    cost = np.array([o.costs for o in options], dtype=float)
+    return value, cost.reshape(len(options), len(limit)), limit
 
 
 def _core(
@@ -206,23 +194,20 @@ def _core(
     limited = limit < np.sum([cost[i].max(axis=0) for i in keep], axis=0)
     units = np.rint(cost[index][:, limited] / UNIT_H).astype(np.int64)
     budget = np.rint(limit[limited] / UNIT_H).astype(np.int64)
-    price = _prices(whole * unit, units, target, budget)
-    worth = whole * unit - units @ price
+    lags = whole * unit
+    price = _prices(lags, units, target, budget)
+    worth = lags - units @ price
     first = np.flatnonzero(np.diff(target, prepend=-1))
-    best = np.zeros(len(keep))
-    np.maximum.at(best, target, worth)
+    best = np.maximum(np.maximum.reduceat(worth, first), 0.0)
     bound = float(best.sum() + budget @ price)
-    return _Core(
-        index, first, rank, units, best[target] - worth, best, budget, price, bound, whole * unit
-    )
+    return _Core(index, first, rank, units, best[target] - worth, lags, best, budget, price, bound)
 
 
 def _undominated(value: NDArray[np.float64], cost: NDArray[np.float64]) -> NDArray[np.bool_]:
     """Say which options are not matched by a better or cheaper one, or by an equal earlier one."""
     matched = (value[:, None] >= value) & np.all(cost[:, None] <= cost, axis=2)
     first = np.tri(value.size, k=-1, dtype=bool).T
-    kept: NDArray[np.bool_] = ~np.any(matched & (~matched.T | first), axis=0)
-    return kept
+    return np.asarray(~np.any(matched & (~matched.T | first), axis=0))
 
 
 def _prices(
@@ -235,10 +220,10 @@ def _prices(
     n = value.size
     if not budget.size:
         return np.zeros(0)
-    scale = np.maximum(cost.max(axis=0), 1).astype(float)
+    scale, worth = np.maximum(cost.max(axis=0), 1).astype(float), value.max()
     once = csr_array((np.ones(n), (target, np.arange(n))), shape=(target[-1] + 1, n))
     solved = linprog(
-        -value,
+        -value / worth,
         A_ub=vstack([once, csr_array((cost / scale).T)]),
         b_ub=np.concatenate([np.ones(once.shape[0]), budget / scale]),
         bounds=(0, None),
@@ -246,8 +231,8 @@ def _prices(
     )
     if solved.status != 0:
         raise PlanError(f"the best subset of targets was not found: {solved.message}")
-    price: NDArray[np.float64] = np.maximum(-solved.ineqlin.marginals[once.shape[0] :], 0.0) / scale
-    return price
+    price = np.maximum(-solved.ineqlin.marginals[once.shape[0] :], 0.0)
+    return np.asarray(price * worth / scale, dtype=float)
 
 
 def _search(core: _Core) -> tuple[NDArray[np.int64], float]:
@@ -287,11 +272,10 @@ def _within(core: _Core, within: float) -> tuple[NDArray[np.int64] | None, bool]
     complete = True
     for t, choice in enumerate(choices):
         ranks = (ranks[:, None] + rank[choice]).ravel()
-        used = (used[:, None] + cost[choice]).reshape(-1, core.budget.size)
+        used = (used[:, None] + cost[choice]).reshape(ranks.size, core.budget.size)
         sums = (sums[:, None] + value[choice]).ravel()
-        kept = np.arange(sums.size)
+        kept = np.flatnonzero(np.all(used + least[t] <= core.budget, axis=1))
         if choice.size > 1:
-            kept = kept[np.all(used + least[t] <= core.budget, axis=1)]
             for price, rest in zip(prices, ahead[t], strict=True):
                 reach = sums[kept] + rest + (core.budget - used[kept]) @ price
                 kept = kept[reach >= floor]
@@ -313,12 +297,10 @@ def _within(core: _Core, within: float) -> tuple[NDArray[np.int64] | None, bool]
 
 
 def _around(price: NDArray[np.float64]) -> NDArray[np.float64]:
-    """Return the prices, and others around them, (prices, resources).
-
-    Near ones tell more while many targets are left to choose, those further off towards the end.
-    """
+    """Return the prices, and others around them, (prices, resources)."""
     if not price.size:
         return price[None]
+    # Near ones tell more while many targets are left to choose, far ones towards the end.
     spread = np.where(np.arange(MORE_PRICES) % 2, 0.08, 0.35)
     even = Halton(price.size, scramble=False).random(MORE_PRICES + 1)[1:]
     return np.vstack([price, price * np.exp(spread[:, None] * ndtri(even))])
@@ -327,8 +309,7 @@ def _around(price: NDArray[np.float64]) -> NDArray[np.float64]:
 def _after(each: list[NDArray[np.float64]]) -> NDArray[np.float64]:
     """Return the sums over all later rows."""
     rows = np.array(each, dtype=float)
-    sums: NDArray[np.float64] = rows[::-1].cumsum(axis=0)[::-1] - rows
-    return sums
+    return np.asarray(rows[::-1].cumsum(axis=0)[::-1] - rows)
 
 
 def _competing(sums: NDArray[np.int64], used: NDArray[np.int64]) -> NDArray[np.int64]:
@@ -344,27 +325,22 @@ def _competing(sums: NDArray[np.int64], used: NDArray[np.int64]) -> NDArray[np.i
     # The place of a sum among all sums, so that one running maximum serves all groups.
     place = np.unique(sums, return_inverse=True)[1].ravel()[order] + group * sums.size
     top = np.maximum.accumulate(place)
-    better = np.append(True, place[1:] > top[:-1])
-    kept: NDArray[np.int64] = np.sort(order[better])
-    return kept
+    return np.sort(order[np.append(True, place[1:] > top[:-1])])
 
 
 def lags_distribution(successes: Sequence[NDArray[np.bool_]]) -> LagsDistribution:
     """Return how many targets give their lag, if they share the weather.
 
-    Trial t has the same weather for all targets, so outcomes of one trial number go together: in
-    a bad year many fail at once. Targets may have had different numbers of trials. Counting lags
-    trial by trial would use only the trials that all have had; instead every outcome is used. Each
-    target succeeds as often as in all of its trials, and given the year's weather w, standard
-    normal, with chance ``Phi((Phi^-1(p) + sqrt(r) w) / sqrt(1 - r))`` (one common factor: Vasicek
-    1987, from memory). The single correlation r is the one that gives the covariances seen
-    in the trials that each pair of targets shares, weighted by their number. The number of lags is
-    then a sum of independent trials in each weather, averaged over w. If nothing is shared, r is 0
-    and the sum is that of independent trials.
+    Trial t has the same weather for all targets: in a bad year many fail at once. Counting lags
+    trial by trial would use only the trials that all targets have had; instead every outcome is
+    used. Each target succeeds as often as in all of its trials, and given the year's weather w,
+    standard normal, with chance ``Phi((Phi^-1(p) + sqrt(r) w) / sqrt(1 - r))`` (one common factor:
+    Vasicek 1987, from memory). The single r gives the covariances seen in the trials that each
+    pair of targets shares, weighted by their number. The number of lags is a sum of independent
+    trials in each weather, averaged over w; it is that of independent targets where r is 0.
 
-    Assumed: all targets feel the same weather about as strongly. Targets of different seasons or
-    sites feel it less in common, which lowers r for all; the spread of the sum stays right. That
-    the successes themselves are known only from some trials is not in the spread.
+    Targets of different seasons or sites have less weather in common, which lowers r for all; the
+    spread of the sum stays right. How far the successes are uncertain is not in the spread.
 
     Parameters
     ----------
@@ -379,8 +355,7 @@ def lags_distribution(successes: Sequence[NDArray[np.bool_]]) -> LagsDistributio
     if not all(s.size for s in successes):
         raise ValueError("a target without trials has no success to count with")
     n = len(successes)
-    longest = max((s.size for s in successes), default=0)
-    hit, tried = np.zeros((n, longest)), np.zeros((n, longest))
+    hit, tried = np.zeros((2, n, max((s.size for s in successes), default=0)))
     for i, s in enumerate(successes):
         hit[i, : s.size], tried[i, : s.size] = s, 1.0
     success = np.array([np.mean(s) for s in successes])
@@ -393,19 +368,15 @@ def lags_distribution(successes: Sequence[NDArray[np.bool_]]) -> LagsDistributio
         chance[:, 1 : i + 2] += gained
     chances = chance.mean(axis=0)
     below = np.cumsum(chances)
-    # Sums of probabilities reach 0.1 only up to rounding.
     lo, median, hi = (int(np.argmax(below >= q - 1e-12)) for q in (0.1, 0.5, 0.9))
-    return LagsDistribution(
-        float(success.sum()), lo, median, hi, tuple(float(c) for c in np.maximum(chances, 0.0))
-    )
+    return LagsDistribution(float(success.sum()), lo, median, hi, tuple(chances.tolist()))
 
 
 def _given_weather(success: NDArray[np.float64], common: float) -> NDArray[np.float64]:
     """Return each target's success in each of the kinds of weather, (nodes, targets)."""
     weather = ndtri((np.arange(NODES) + 0.5) / NODES)
-    shift = np.sqrt(common) * weather[:, None]
-    given: NDArray[np.float64] = ndtr((ndtri(success) + shift) / np.sqrt(1 - common))
-    return given
+    odds = ndtri(success) + np.sqrt(common) * weather[:, None]
+    return np.asarray(ndtr(odds / np.sqrt(1 - common)), dtype=float)
 
 
 def _common_part(
@@ -414,9 +385,8 @@ def _common_part(
     """Return the correlation that gives the covariances of the trials that pairs share."""
     shared = tried @ tried.T
     np.fill_diagonal(shared, 0.0)
-    weight = np.where(shared > 1, shared, 0.0)
+    weight, enough = np.where(shared > 1, shared, 0.0), np.maximum(shared, 2.0)
     own = hit @ tried.T
-    enough = np.maximum(shared, 2.0)
     seen = float(np.sum(weight * (hit @ hit.T - own * own.T / enough) / (enough - 1)))
 
     def excess(common: float) -> float:
@@ -424,7 +394,6 @@ def _common_part(
         away = given - given.mean(axis=0)
         return float(np.sum(weight * (away.T @ away))) / NODES - seen
 
-    most = 0.99
-    if seen <= 0 or excess(0.0) >= 0:
+    if seen <= 0:
         return 0.0
-    return most if excess(most) <= 0 else float(brentq(excess, 0.0, most, xtol=1e-6))
+    return 0.99 if excess(0.99) <= 0 else float(brentq(excess, 0.0, 0.99, xtol=1e-6))

@@ -30,10 +30,13 @@ GRID, NEAR = 49, 13
 """Trial lags over the whole range, and more of them about the true one."""
 
 STEP = 8
-"""Every so many of them are tried first, those between where it matters; a power of two."""
+"""Every so many of them are tried first, those between where it matters."""
 
 HOPELESS = 10.0
-"""So far below the best in ln likelihood at both sides, nothing is looked for between."""
+"""So far below the best in ln likelihood at both ends, an interval is not looked into."""
+
+ROUGH = 0.05
+"""Share of the highest density by which it may stray from a straight line."""
 
 BLOCK = 30_000
 """Elements of the matrices that are held at a time: they stay in the processor's cache."""
@@ -141,21 +144,31 @@ def _refined(
 ) -> tuple[NDArray[np.bool_], Floats]:
     """Return which lags were tried, (k,), and ln density at these, (tried, simulations).
 
-    The truth's lag and each `step`-th are tried, then those between that a neighbour gives hope.
+    The truth's lag and each `step`-th are tried; then the middle of each interval whose ends give
+    hope, and on to either side of it, unless the density there is what a straight line says.
     """
-    number = np.arange(lags.size)
-    tried = number % step == 0
+    tried = np.arange(lags.size) % step == 0
     tried[-1] = tried[min(np.searchsorted(lags, truth_d), lags.size - 1)] = True
-    curves = densities(lags[tried])
-    while step > 1:
-        place = np.cumsum(tried) - 1
-        between = np.flatnonzero((number % step == step // 2) & ~tried)
-        beside = np.maximum(curves[place[between]], curves[place[between] + 1])
-        more = between[np.any(beside > curves.max(axis=0) - HOPELESS, axis=1)]
-        curves = np.insert(curves, place[more] + 1, densities(lags[more]), axis=0)
-        tried[more] = True
-        step //= 2
-    return tried, curves
+    first = densities(lags[tried])
+    curves = np.full((lags.size, first.shape[1]), -math.inf)
+    curves[tried] = first
+    ends = np.flatnonzero(tried)
+    left, right = ends[:-1], ends[1:]
+    while True:
+        hope = np.maximum(curves[left], curves[right]) > curves.max(axis=0) - HOPELESS
+        on = (right - left > 1) & np.any(hope, axis=1)
+        if not on.any():
+            return tried, curves[tried]
+        left, right = left[on], right[on]
+        middle = (left + right) // 2
+        curves[middle] = densities(lags[middle])
+        tried[middle] = True
+        top = curves.max(axis=0)
+        start, found, end = (np.exp(curves[k] - top) for k in (left, middle, right))
+        share = ((lags[middle] - lags[left]) / (lags[right] - lags[left]))[:, None]
+        rough = np.any(np.abs(found - start - share * (end - start)) > ROUGH, axis=1)
+        left, middle, right = left[rough], middle[rough], right[rough]
+        left, right = np.append(left, middle), np.append(middle, right)
 
 
 def _quantiles(x: Floats, density: Floats, probabilities: Sequence[float]) -> Floats:

@@ -3,10 +3,11 @@
 from __future__ import annotations
 
 from base64 import b64encode
+from collections.abc import Sequence
 from importlib.resources import files
 from typing import Any
 
-from planner.model.plan import Plan
+from planner.model.plan import Plan, Sensitivity
 from planner.model.trial import Score
 
 __all__ = ["page"]
@@ -61,8 +62,24 @@ def _card(
         "grid": images.get(f"success {name}"),
         "example": images.get(f"example {name}"),
         "ambiguity": images.get(f"ambiguity {name}"),
+        "sensitivity": _by_factor(plan.sensitivities.get(name, ())),
+        "relations": [x for x in plan.sensitivities.get(name, ()) if x.factor == "relation"],
         "opinions": [o for o in plan.opinions if o.target == name],
     }
+
+
+FACTORS = {
+    "lag": "the lag is",
+    "amplitude": "the variability's amplitude is",
+    "timescale": "its timescale is",
+    "weather": "the weather of its seasons is",
+}
+
+
+def _by_factor(found: Sequence[Sensitivity]) -> list[tuple[str, list[Sensitivity]]]:
+    """Return the three levels of each factor under its words."""
+    rows = ((words, [x for x in found if x.factor == key]) for key, words in FACTORS.items())
+    return [(words, levels) for words, levels in rows if levels]
 
 
 def _summary(plan: Plan) -> list[str]:

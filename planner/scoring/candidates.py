@@ -163,7 +163,7 @@ def between(layouts: Sequence[Layout], best: Layout) -> tuple[Layout, ...]:
         bound = min(further, key=lambda v: abs(v - now)) if further else now * 1.5**sense
         for share in THIRDS:
             value = grain * round(now * (bound / now) ** share / grain)
-            if 0 < sense * (value - now) and sense * (bound - value) > 0:
+            if sense * (value - now) > 0 and sense * (bound - value) > 0:
                 found.append(replace(best, **{name: value}))
     return tuple(dict.fromkeys(c for c in found if _sensible(c)))
 

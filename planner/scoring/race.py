@@ -1,9 +1,11 @@
 """Which layouts of a target still need trials.
 
-The information forecast screens them first: it knows variability and response, which a recovery
-has to find out, so that trials succeed less often than it says (in none of 19 targets with 12
-layouts each did they succeed more often). A layout whose forecast lies below the goal, or far below
-the best forecast of the target, takes no part. The others race in rounds. The question is which is the cheapest that reaches the goal, so that a
+The information forecast screens them first. It knows variability and response, which a recovery has
+to find out, so that trials succeed less often than it says. A layout whose forecast lies below the
+goal takes no part in the search for the cheapest that reaches it; nor, where none does, one whose
+forecast lies far below the best in the search for the best.
+
+The others race in rounds. The question is which is the cheapest that reaches the goal, so that a
 layout drops out
 
 - when it is shown to lie below the goal,

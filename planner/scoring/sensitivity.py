@@ -2,11 +2,10 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
-
 import numpy as np
 from numpy.typing import NDArray
 
+from planner.model.plan import Sensitivity
 from planner.scoring.intervals import Z_90_ONE_SIDED, wilson
 from planner.scoring.logistic import Logistic, fit_logistic
 
@@ -25,22 +24,6 @@ LEVELS = (
     ("timescale", ("short", "median", "long")),
     ("weather", ("bad", "median", "good")),
 )
-
-
-@dataclass(frozen=True, slots=True)
-class Sensitivity:
-    """Success of a layout where one factor is held and the others are as they may be."""
-
-    factor: str
-    """``"lag"``, ``"amplitude"``, ``"timescale"`` or ``"weather"``."""
-    level: str
-    value: float
-    """At the factor's 10th, 50th or 90th percentile: standard normal deviate of the logarithm;
-    of the weather, the usable nights."""
-    success: float
-    success_lo: float
-    success_hi: float
-    """Both ends hold together with 90 % confidence."""
 
 
 def sensitivities(
