@@ -9,6 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from planner.base.errors import PlanError
+from planner.base.hushed import hushed
 from planner.model.campaign import Campaign, Layout
 from planner.model.plan import Subset
 from planner.model.trial import Score
@@ -94,13 +95,14 @@ def best_list(options: Sequence[Option], hours: float) -> list[int]:
     once = csr_array((np.ones(len(options)), (which, everything)), (len(targets), len(options)))
     # A thousandth of a lag for all hours together: enough to prefer the cheaper of equals.
     thrift = 1e-3 * worth.max() / max(cost.sum(), 1e-9)
-    found = milp(
-        thrift * cost - worth,
-        integrality=np.ones(len(options)),
-        bounds=Bounds(0, 1),
-        constraints=[LinearConstraint(once, ub=1), LinearConstraint(cost[None, :], ub=hours)],
-        options={"mip_rel_gap": GAP},
-    )
+    with hushed():  # the solver prints remarks that no option switches off
+        found = milp(
+            thrift * cost - worth,
+            integrality=np.ones(len(options)),
+            bounds=Bounds(0, 1),
+            constraints=[LinearConstraint(once, ub=1), LinearConstraint(cost[None, :], ub=hours)],
+            options={"mip_rel_gap": GAP},
+        )
     if found.status != 0:
         raise PlanError(f"the best list of targets was not found: {found.message}")
     return [int(i) for i in np.flatnonzero(found.x > 0.5)]

@@ -12,7 +12,7 @@ from planner.scoring.logistic import Logistic, fit_logistic
 __all__ = ["FEWEST_TRIALS", "Sensitivity", "reweighted", "sensitivities"]
 
 FEWEST_TRIALS = 20
-"""Fewer tell nothing of five coefficients."""
+"""Fewer tell nothing of six coefficients."""
 RIDGE = 0.25
 """A prior of standard deviation 2 on log odds per standard deviation of a factor: weak against
 a few dozen trials."""

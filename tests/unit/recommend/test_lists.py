@@ -76,6 +76,19 @@ def test_a_long_list_is_solved_and_beats_the_greedy_rule():
     assert sum(options[i].hours for i in chosen) <= hours + 1e-6
 
 
+def test_the_solver_prints_nothing_into_our_results(capfd):
+    rng = np.random.default_rng(0)
+    options = [
+        option(f"T{t}", float(h), float(s))
+        for t in range(60)
+        for h, s in zip(rng.uniform(5, 150, 24), rng.uniform(0.02, 0.98, 24), strict=True)
+    ]
+    for hours in (100.0, 500.0, 1500.0):  # left alone, it prints a line or more here
+        best_list(options, hours)
+    print("result")
+    assert capfd.readouterr().out == "result\n"
+
+
 def test_lags_are_counted_trial_by_trial():
     together = [1, 1, 0, 0] * 10
     options = [option(name, 5.0, 0.5, outcomes=together) for name in "ABCD"]
