@@ -171,16 +171,22 @@ def make_plan(reading: Reading, tools: Tools) -> Plan:
     opinions = opinions_of(
         setting,
         [
-            (p, a.score.layout, a.score.promise)
-            for p, a in zip(prospects, advice, strict=True)
+            (p, a.score.layout, a.score.promise, r.limit(a.score.layout))
+            for p, a, r in zip(prospects, advice, raced, strict=True)
             if a.score
         ],
         trials,
         tools,
     )
     advice = tuple(hardened(a, opinions, campaign.success) for a in advice)
-    requests = requests_of(campaign, _scheduled(prospects, advice))
+    chosen = _scheduled(prospects, advice)
+    requests = requests_of(campaign, chosen)
     visits, unplaced = planned(campaign, requests)
+    limits = {
+        r.offer.target: r.limit(a.score.layout)
+        for r, a in zip(raced, advice, strict=True)
+        if a.score
+    }
     return Plan(
         campaign=campaign,
         forecasts=forecasts,
@@ -204,7 +210,7 @@ def make_plan(reading: Reading, tools: Tools) -> Plan:
         unplaced=tuple(unplaced),
         time_spent=time_spent(campaign, visits, dark_hours(skies)),
         hours_scheduled=hours_by_target(campaign, visits),
-        executed=execute(campaign, _scheduled(prospects, advice), requests, trials, tools),
+        executed=execute(campaign, chosen, limits, requests, trials, tools),
         run=run_record(reading),
     )
 
@@ -230,11 +236,15 @@ def _scheduled(
 def execute(
     campaign: Campaign,
     chosen: Sequence[tuple[Prospect, Layout]],
+    limits: dict[str, float],
     requests: Sequence[Request],
     trials: int,
     tools: Tools,
 ) -> dict[str, Score]:
-    """Run the schedule of all targets under each trial's weather and score what is left of it."""
+    """Run the schedule of all targets under each trial's weather and score what is left of it.
+
+    `limits` are, by target, the correlations that claims must exceed.
+    """
     setting = setting_of(campaign)
     used: dict[str, list[Used]] = {prospect.forecast.name: [] for prospect, _ in chosen}
     for trial in range(trials):
@@ -255,7 +265,14 @@ def execute(
             used[name].append(with_spectra(prospect, imaging, line))
         tools.progress("weather over the schedule", trial + 1, trials)
     jobs = [
-        Job(setting, prospect, layout, trials, tuple(used[prospect.forecast.name]))
+        Job(
+            setting,
+            prospect,
+            layout,
+            trials,
+            tuple(used[prospect.forecast.name]),
+            limits[prospect.forecast.name],
+        )
         for prospect, layout in chosen
     ]
     tables = score_jobs(jobs, tools, "schedule under weather")

@@ -15,6 +15,11 @@ from numpy.typing import NDArray
 __all__ = ["log_likelihoods", "simulated_lines"]
 
 Floats = NDArray[np.float64]
+Indices = NDArray[np.int64]
+
+_NOTHING = 1e-7
+"""Share of the rms below which a whitened covariance counts as none: a continuum epoch says nothing
+new about a response that those before it have settled."""
 
 
 @njit(cache=True, nogil=True, fastmath={"reassoc", "contract"})
@@ -95,10 +100,10 @@ def _factor(rows: Floats) -> bool:
 @njit(cache=True, nogil=True)
 def _whiten(
     factor: tuple[Floats, Floats, Floats], basis: Floats, cross: Floats, rms: float, white: Floats
-) -> Floats:
-    """Write ``rms * whitened(cross)``, transposed, to `white`; return its products with `basis`.
+) -> tuple[Floats, Indices]:
+    """Write ``rms * whitened(cross)``, transposed, to `white`; of this the rows beyond m stay.
 
-    Of `white` (m or more, n) the rows beyond m are left as they are.
+    Returns its products with `basis` and, for each four rows, how many columns are not nothing.
     """
     decay, gain, spread = factor
     n, m = cross.shape
@@ -118,12 +123,24 @@ def _whiten(
                 along[p, i] += u * one[i]
         for i in range(m):
             white[i, k] = one[i]
-    return along
+    used = np.zeros(white.shape[0] // 4, dtype=np.int64)
+    for i in range(m):
+        k = n
+        while k > used[i // 4] and abs(white[i, k - 1]) < _NOTHING * rms:
+            k -= 1
+        used[i // 4] = max(used[i // 4], k)
+    return along, used
 
 
 @njit(cache=True, nogil=True)
 def _covariance(
-    rows: Floats, white: Floats, along: Floats, line: Floats, err2: Floats, rms: float
+    rows: Floats,
+    white: Floats,
+    along: Floats,
+    used: Indices,
+    line: Floats,
+    err2: Floats,
+    rms: float,
 ) -> None:
     """Write the lower triangle of the line's covariance given the continuum to `rows`."""
     m = err2.size
@@ -140,7 +157,7 @@ def _covariance(
         rows[i, i] = 1.0
     for i in range(0, padded, 4):
         for j in range(0, i + 4, 4):
-            _add_tile(rows, i, j, white, white, i, j, white.shape[1], -1.0)
+            _add_tile(rows, i, j, white, white, i, j, min(used[i // 4], used[j // 4]), -1.0)
 
 
 @njit(cache=True, nogil=True)
@@ -162,9 +179,9 @@ def simulated_lines(
     r, m = normals2.shape
     padded = (m + 3) // 4 * 4
     white = np.zeros((padded, cross.shape[0]))
-    along = _whiten(factor, basis, cross, rms, white)
+    along, used = _whiten(factor, basis, cross, rms, white)
     rows = np.zeros((padded, padded))
-    _covariance(rows, white, along, line, err2, rms)
+    _covariance(rows, white, along, used, line, err2, rms)
     out = np.full((r, m), math.nan)
     if not _factor(rows):
         return out
@@ -243,14 +260,14 @@ def log_likelihoods(
     data, mean, one = padded, padded + many, padded + 2 * many
     out = np.empty((cross.shape[0], r))
     for lag in range(cross.shape[0]):
-        along = _whiten(factor, basis, cross[lag], rms, white)
-        _covariance(rows, white, along, line[lag], err2, rms)
+        along, used = _whiten(factor, basis, cross[lag], rms, white)
+        _covariance(rows, white, along, used, line[lag], err2, rms)
         rows[data:] = 0.0
         rows[data : data + r, :m] = lines
         rows[one, :m] = 1.0
         for i in range(0, many, 4):
             for j in range(0, padded, 4):
-                _add_tile(rows, mean + i, j, drivers, white, i, j, n, 1.0)
+                _add_tile(rows, mean + i, j, drivers, white, i, j, used[j // 4], 1.0)
         if not _factor(rows):
             out[lag] = -math.inf
             continue

@@ -83,7 +83,9 @@ def _causes(
     campaign: Campaign, cases: Sequence[_Case], tools: Tools
 ) -> dict[int, tuple[Cause, ...]]:
     setting = setting_of(campaign)
-    jobs = [(c, mended(setting, c.prospect, c.best.layout)) for c in cases]
+    jobs = [
+        (c, mended(setting, c.prospect, c.best.layout, c.raced.limit(c.best.layout))) for c in cases
+    ]
     tables = iter(
         score_jobs([job for _, mine in jobs for job in mine.values()], tools, "what limits")
     )
@@ -106,8 +108,19 @@ def _helps(
             prospect = prospect_of(alone, 0, forecasts[case.index], observe_sky(alone))
             tried.append((case, change, prospect))
     found: dict[int, list[Help]] = {}
-    for trials in HELP_TRIALS:
-        jobs = [Job(setting_of(c.campaign), p, c.layout, trials) for _, c, p in tried]
+    for first, most in zip((True, False), HELP_TRIALS, strict=True):
+        # At first the limit of the layout without the change will do; what remains has its own.
+        trials = min(most, campaign.simulation.trials)
+        jobs = [
+            Job(
+                setting_of(change.campaign),
+                prospect,
+                change.layout,
+                trials,
+                limit=case.raced.limit(case.best.layout) if first else None,
+            )
+            for case, change, prospect in tried
+        ]
         tables = score_jobs(jobs, tools, "what helps")
         now: dict[int, list[tuple[Help, tuple[_Case, Change, Prospect]]]] = {}
         for (case, change, prospect), table in zip(tried, tables, strict=True):

@@ -41,8 +41,11 @@ WANTS = {
 }
 
 
-def mended(setting: Setting, prospect: Prospect, layout: Layout) -> dict[str, Job]:
-    """Return the trials of a layout with one thing mended each, by what is mended."""
+def mended(setting: Setting, prospect: Prospect, layout: Layout, limit: float) -> dict[str, Job]:
+    """Return the trials of a layout with one thing mended each, by what is mended.
+
+    `limit` is the correlation that claims of the layout as it is had to exceed.
+    """
     lit = replace(
         setting,
         climates=tuple((site, _always_clear(c)) for site, c in setting.climates),
@@ -64,12 +67,13 @@ def mended(setting: Setting, prospect: Prospect, layout: Layout) -> dict[str, Jo
         seasons=max(layout.seasons, len(by_year(prospect.seasons))),
         shift_d=0.0,
     )
-    return {
-        "sky": Job(lit, prospect, layout, CAUSE_TRIALS),
-        "noise": Job(setting, quiet, layout, CAUSE_TRIALS),
-        "epochs": Job(setting, prospect, denser, CAUSE_TRIALS),
-        "season": Job(setting, prospect, longer, CAUSE_TRIALS),
+    cases = {
+        "sky": (lit, prospect, layout),
+        "noise": (setting, quiet, layout),
+        "epochs": (setting, prospect, denser),
+        "season": (setting, prospect, longer),
     }
+    return {name: Job(*case, CAUSE_TRIALS, limit=limit) for name, case in cases.items()}
 
 
 def _always_clear(climate: WeatherClimate) -> WeatherClimate:

@@ -26,7 +26,7 @@ UNRELATED = "unrelated line"
 
 def opinions_of(
     setting: Setting,
-    chosen: Sequence[tuple[Prospect, Layout, float]],
+    chosen: Sequence[tuple[Prospect, Layout, float, float]],
     trials: int,
     tools: Tools,
 ) -> tuple[Opinion, ...]:
@@ -38,8 +38,9 @@ def opinions_of(
     Parameters
     ----------
     setting : Setting
-    chosen : sequence of (Prospect, Layout, float)
-        With the information forecast's success.
+    chosen : sequence of (Prospect, Layout, float, float)
+        With the information forecast's success, and the correlation that claims must exceed: an
+        observer finds it without knowing of a disturbance.
     trials : int
     tools : Tools
     """
@@ -55,8 +56,8 @@ def opinions_of(
         other = replace(setting, simulation=replace(simulation, method="correlation"))
         ways["correlation"] = (other, min(OTHER_TRIALS, trials))
     asked = [
-        (Job(way, prospect, layout, count), what)
-        for prospect, layout, _ in chosen
+        (Job(way, prospect, layout, count, limit=limit if by_forecast else None), what)
+        for prospect, layout, _, limit in chosen
         for what, (way, count) in ways.items()
     ]
     tables = score_jobs([job for job, _ in asked], tools, "second opinions")
@@ -65,7 +66,7 @@ def opinions_of(
         for (job, what), table in zip(asked, tables, strict=True)
     ]
     if by_forecast:
-        tried += [_forecast(prospect, promise) for prospect, _, promise in chosen]
+        tried += [_forecast(prospect, promise) for prospect, _, promise, _ in chosen]
     return tuple(tried)
 
 

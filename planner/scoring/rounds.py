@@ -8,6 +8,7 @@ from dataclasses import dataclass, field, replace
 import numpy as np
 from numpy.typing import NDArray
 
+from planner.model.campaign import Layout
 from planner.model.trial import Offer, TrialTable
 from planner.scoring.candidates import between
 from planner.scoring.draws import Setting
@@ -48,6 +49,13 @@ class Raced:
     table: TrialTable
     forecasts: tuple[LayoutForecast, ...]
     """In the order of the layouts."""
+    limits: tuple[float, ...]
+    """Correlation that claims of each layout had to exceed; minus infinity where it had no
+    trials."""
+
+    def limit(self, layout: Layout) -> float:
+        """Return the limit of one layout."""
+        return self.limits[self.offer.layouts.index(layout)]
 
 
 @dataclass(slots=True)
@@ -81,6 +89,9 @@ class _Racer:
             most=self.setting.simulation.trials,
         )
         return next_round(race, table.trials, table.success)
+
+    def all_limits(self) -> tuple[float, ...]:
+        return tuple(self.limits.get(i, -np.inf) for i in range(len(self.offer.layouts)))
 
     def cheapest_that_reaches(self) -> int | None:
         """Return the layout that the race leaves as the cheapest shown to reach the goal."""
@@ -165,7 +176,7 @@ def race_targets(setting: Setting, offers: Sequence[Offer], tools: Tools) -> lis
             running = _one_round(running, tools)
         running = _joined(winners, tools)
     stage.end()
-    return [Raced(r.offer, r.table(), tuple(r.forecasts)) for r in racers]
+    return [Raced(r.offer, r.table(), tuple(r.forecasts), r.all_limits()) for r in racers]
 
 
 def _one_round(racers: Sequence[_Racer], tools: Tools) -> list[_Racer]:

@@ -1,7 +1,7 @@
 """Expected recovery against full recoveries; run as ``python bench_information.py [LAYOUTS]``.
 
 Each layout has a season, cadences, losses, errors and a lag of its own. Eight draws of lag,
-walk, response and lost nights go to the forecast; full recoveries of fresh light curves, with
+walk, response and lost nights go to the forecast, close epochs averaged as for a layout; full recoveries of fresh light curves, with
 every parameter unknown, run through the same eight draws. Prints one line for each layout, then
 correlation and mean absolute difference of the two rates of success and the time of one draw.
 Without an argument: 64 layouts of 120 recoveries each, some minutes on one core. With the argument
@@ -19,10 +19,10 @@ from planner.recovery.expected import expected_recovery
 from planner.recovery.information import make_design, with_normal_points
 from planner.recovery.posterior import Belief, lag_posterior
 from planner.recovery.response import Response
+from planner.scoring.forecasting import BIN
 
 LO_D, HI_D, WITHIN, ERROR_BELOW = 1.0, 100.0, 0.3, 0.3
 SIGMA, SCALE, TAU_D = 0.15, 0.6, 60.0
-BIN = 1.0 / 16.0
 BELIEF = Belief(TAU_D, 0.3, SIGMA, 0.2, SCALE, 0.15)
 
 

@@ -35,9 +35,9 @@ def even(dt, tau, noise, duration, width):
     ("grid", "sharp", "wide"),
     [
         ((4, 100, 0.2, 600), 0.44, 0.82),
-        ((4, 100, 1.0, 600), 4.10, 5.48),
-        ((7, 300, 0.5, 1500), 3.02, 3.84),
-        ((1, 50, 0.3, 180), 0.30, 0.87),
+        pytest.param((4, 100, 1.0, 600), 4.10, 5.48, marks=pytest.mark.slow),
+        pytest.param((7, 300, 0.5, 1500), 3.02, 3.84, marks=pytest.mark.slow),
+        pytest.param((1, 50, 0.3, 180), 0.30, 0.87, marks=pytest.mark.slow),
     ],
 )
 def test_bounds_on_even_grids(grid, sharp, wide):
@@ -49,6 +49,7 @@ def test_bounds_on_even_grids(grid, sharp, wide):
         assert found.error_d == pytest.approx(found.error_known_d, rel=1e-12)
 
 
+@pytest.mark.slow
 @pytest.mark.parametrize("grid", [(4, 100, 1.0, 600), (7, 300, 0.5, 1500)])
 def test_approaches_the_bound_for_continuous_observation(grid):
     dt, tau, noise, duration = grid

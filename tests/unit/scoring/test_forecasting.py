@@ -17,9 +17,9 @@ def setting(campaign):
 
 
 def test_a_forecast_does_not_depend_on_the_layouts_beside_it(setting, prospect):
-    together = forecast_target(setting, prospect, LAYOUTS)
-    assert together == [forecast_layout(setting, prospect, layout) for layout in LAYOUTS]
-    assert together[::-1] == forecast_target(setting, prospect, LAYOUTS[::-1])
+    together = forecast_target(setting, prospect, LAYOUTS[1:], 2)
+    assert together == [forecast_layout(setting, prospect, one, 2) for one in LAYOUTS[1:]]
+    assert together[::-1] == forecast_target(setting, prospect, LAYOUTS[:0:-1], 2)
     assert len({f.success for f in together}) > 1
 
 
