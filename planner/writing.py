@@ -5,17 +5,20 @@ from __future__ import annotations
 import re
 from collections.abc import Iterable
 from pathlib import Path
+from typing import NamedTuple
 
 from planner import export, report
 from planner.base.files import write_bytes
+from planner.base.workers import Workers
 from planner.campaign import Reading
 from planner.model.plan import Plan
-from planner.scoring import ambiguity_of, example_of, setting_of
+from planner.model.trial import Prospect, Score, TrialTable
+from planner.scoring import Setting, ambiguity_of, example_of, setting_of
 
 __all__ = ["write_plan"]
 
 
-def write_plan(plan: Plan, reading: Reading, folder: Path) -> None:
+def write_plan(plan: Plan, reading: Reading, folder: Path, workers: Workers) -> None:
     """Write everything a plan holds into a folder that is ours. Raises `OutputError`."""
     names = [t.name for t in plan.campaign.targets]
     schedule = export.schedule_table(plan.campaign, plan.visits)
@@ -37,7 +40,7 @@ def write_plan(plan: Plan, reading: Reading, folder: Path) -> None:
     for name, table in tables.items():
         export.write_ecsv(table, folder / f"{name}.ecsv")
     export.write_csv(schedule, folder / "schedule.csv")
-    figures = draw_figures(plan)
+    figures = draw_figures(plan, workers)
     (folder / "figures").mkdir(exist_ok=True)
     stems = file_names(figures)
     for title, image in figures.items():
@@ -50,28 +53,55 @@ def write_plan(plan: Plan, reading: Reading, folder: Path) -> None:
     export.run_json(plan.run, folder / "run.json")
 
 
-def draw_figures(plan: Plan) -> dict[str, bytes]:
+class _Card(NamedTuple):
+    """What the figures of one target are drawn from."""
+
+    setting: Setting
+    prospect: Prospect
+    table: TrialTable
+    scores: tuple[Score, ...]
+    advised: Score
+    goal: float
+
+
+def draw_figures(plan: Plan, workers: Workers) -> dict[str, bytes]:
     """Return every figure of a plan as PNG, by what it shows."""
     setting = setting_of(plan.campaign)
     figures = {
         f"visibility {site}": report.png(report.visibility_figure(plan.campaign, sky))
         for site, sky in plan.skies.items()
     }
-    for prospect, table, advice in zip(
-        plan.prospects, plan.trials, plan.recommendations, strict=True
-    ):
-        if advice.score is None:
-            continue
-        scores = [s for s in plan.scores if s.target == advice.target]
-        grid = report.success_figure(scores, advice.score, plan.campaign.success.goal)
-        figures[f"success {advice.target}"] = report.png(grid)
-        example = example_of(setting, prospect, advice.score.layout, table)
-        figures[f"example {advice.target}"] = report.png(report.example_figure(example))
-        curve = ambiguity_of(setting, prospect, advice.score.layout)
-        figures[f"ambiguity {advice.target}"] = report.png(
-            report.ambiguity_figure(curve, prospect.forecast.lag_obs_d)
+    cards = [
+        _Card(
+            setting,
+            prospect,
+            table,
+            tuple(s for s in plan.scores if s.target == advice.target),
+            advice.score,
+            plan.campaign.success.goal,
         )
+        for prospect, table, advice in zip(
+            plan.prospects, plan.trials, plan.recommendations, strict=True
+        )
+        if advice.score is not None
+    ]
+    drawn = dict(workers.each(_of_one_target, cards))
+    for number in range(len(cards)):
+        figures |= drawn[number]
     return figures
+
+
+def _of_one_target(card: _Card) -> dict[str, bytes]:
+    name, layout = card.advised.target, card.advised.layout
+    grid = report.success_figure(card.scores, card.advised, card.goal)
+    example = example_of(card.setting, card.prospect, layout, card.table)
+    curve = ambiguity_of(card.setting, card.prospect, layout)
+    lag_d = card.prospect.forecast.lag_obs_d
+    return {
+        f"success {name}": report.png(grid),
+        f"example {name}": report.png(report.example_figure(example)),
+        f"ambiguity {name}": report.png(report.ambiguity_figure(curve, lag_d)),
+    }
 
 
 def file_names(titles: Iterable[str]) -> dict[str, str]:

@@ -20,7 +20,7 @@ from planner.base.cluster import Cluster
 from planner.base.errors import PlannerError
 from planner.base.process import one_thread, uninterrupted
 
-__all__ = ["Workers", "each"]
+__all__ = ["Workers"]
 
 Task = TypeVar("Task")
 Result = TypeVar("Result")
@@ -35,14 +35,6 @@ RETRIES = 3
 """Times that lost work is done again before any of it is finished."""
 LOOK_S = 1.0
 """How often a silent pool is looked at."""
-
-
-def each(
-    work: Callable[[Task], Result], tasks: Sequence[Task], workers: int
-) -> Iterator[tuple[int, Result]]:
-    """Yield ``(index, work(task))`` from workers that live for this call alone."""
-    with Workers(workers) as crew:
-        yield from crew.each(work, tasks)
 
 
 class Workers:

@@ -177,7 +177,7 @@ def plan(options: Namespace) -> int:
     assert folder is not None
     with working(options, folder) as tools:
         made = pipeline.make_plan(reading, tools)
-        write_plan(made, reading, folder)
+        write_plan(made, reading, folder, tools.workers)
     table = export.recommendation_table(made)
     if options.json:
         say_json({"folder": str(folder), "recommendation": export.as_rows(table)})

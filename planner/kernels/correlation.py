@@ -10,6 +10,7 @@ from numpy.typing import NDArray
 
 __all__ = [
     "correlate",
+    "directly",
     "interpolate",
     "one_way",
     "peak_centroid",
@@ -24,7 +25,8 @@ Ints = NDArray[np.int64]
 
 @njit(cache=True, nogil=True)
 def interpolate(
-    q: Floats,
+    t_at: float,
+    lags: Floats,
     first: int,
     end: int,
     per_step: float,
@@ -32,10 +34,9 @@ def interpolate(
     f: Floats,
     slope: Floats,
     start: int,
-    stops: Ints,
     x: Floats,
 ) -> int:
-    """Interpolate a curve at ``q[first:end]``, into ``x[first:end]``, segment by segment.
+    """Interpolate a curve at ``t_at + lags[first:end]``, into ``x[first:end]``, by segments.
 
     The lags of one segment are few and of unforeseeable number, and mispredicted branches would
     cost more than the arithmetic. So each segment writes whole blocks of eight, and the next one
@@ -43,48 +44,43 @@ def interpolate(
 
     Parameters
     ----------
-    q, x : float64 (k + 8,)
-        Evenly spaced times, and result; eight more than the lags, as room for the last block.
+    lags, x : float64 (k + 8,)
+        Evenly spaced, and result; eight more than the lags, as room for the last block.
     first, end : int
-        ``q[first]`` to ``q[end - 1]`` lie inside the curve.
+        ``t_at + lags[first]`` to ``t_at + lags[end - 1]`` lie inside the curve; first < end.
     per_step : float
-        One over the spacing of `q`.
+        One over the spacing of the lags.
     t, f : float64 (m,)
         The curve, strictly ascending in time, m >= 2.
     slope : float64 (m - 1,)
         Slope of each segment.
     start : int
-        Guess at the segment of ``q[first]``.
-    stops : int64 (m - 1,)
-        Scratch: the first lag beyond each segment.
+        Guess at the segment of the first lag.
 
     Returns
     -------
     int
-        The segment of ``q[first]``.
+        The segment of the first lag.
     """
-    while start > 0 and t[start] > q[first]:
+    q_first, origin = t_at + lags[first], t_at + lags[0]
+    while start > 0 and t[start] > q_first:
         start -= 1
-    while t[start + 1] < q[first]:
+    while t[start + 1] < q_first:
         start += 1
-    q_0 = q[0]
-    for s in range(stops.size):
-        stops[s] = int((t[s + 1] - q_0) * per_step) + 1
-    stops[stops.size - 1] = end
-    block = np.uintp(8)  # unsigned indices spare a test for negative ones: 30 % faster
-    k = np.uintp(first)
-    for s in range(np.uintp(start), np.uintp(stops.size)):
-        stop = np.uintp(min(stops[s], end))
-        t_s, f_s, slope_s = t[s], f[s], slope[s]
-        while True:
+    # unsigned indices spare a test for negative ones: 30 % faster
+    block, one, last = np.uintp(8), np.uintp(1), np.uintp(slope.size - 1)
+    k, k_end, s = np.uintp(first), np.uintp(end), np.uintp(start)
+    while k < k_end:
+        since, f_s, slope_s = t[s] - t_at, f[s], slope[s]
+        stop = k_end
+        if s < last:
+            stop = min(np.uintp(int((t[s + one] - origin) * per_step) + 1), k_end)
+        while k < stop:
             for c in range(block):
-                x[k + c] = f_s + slope_s * (q[k + c] - t_s)
+                x[k + c] = f_s + slope_s * (lags[k + c] - since)
             k += block
-            if k >= stop:
-                break
         k = stop
-        if k >= end:
-            break
+        s += one
     return start
 
 
@@ -96,9 +92,7 @@ def one_way(
 
     Each epoch of `at` is one row: the interpolated curve at all lags that fall inside `of`, added
     to the running sums of those lags. Both ends of a row's range of lags move down from row to
-    row, so every lag is covered by an unbroken run of epochs, ``enters`` to ``leaves`` - 1; the
-    sums are taken about the values of the first of them, which keeps variances free of
-    cancellation.
+    row, so every lag is covered by an unbroken run of epochs, ``enters`` to ``leaves`` - 1.
 
     Parameters
     ----------
@@ -119,16 +113,16 @@ def one_way(
     n, last = lags.size, t_of.size - 1
     if n < 1 or last < 1 or t_at.size < min_points:
         return np.full(n, np.nan)
-    y = f_at - np.mean(f_at)
+    y, f = f_at - np.mean(f_at), f_of - np.mean(f_of)
     slope = np.empty(last)
     for s in range(last):
-        slope[s] = (f_of[s + 1] - f_of[s]) / (t_of[s + 1] - t_of[s])
+        slope[s] = (f[s + 1] - f[s]) / (t_of[s + 1] - t_of[s])
     per_step = (n - 1) / (lags[n - 1] - lags[0]) if n > 1 else 1.0
-    stops = np.empty(last, np.int64)
     enters, leaves = np.full(n, y.size), np.full(n, y.size)
-    q, x, x0, y0 = np.zeros(n + 8), np.zeros(n + 8), np.empty(n), np.empty(n)
+    roomy, x = np.zeros(n + 8), np.zeros(n + 8)
+    roomy[:n] = lags
     sum_x, sum_xx, sum_xy = np.zeros(n), np.zeros(n), np.zeros(n)
-    first, end, reached, start = n, n, n, 0
+    first, end, start = n, n, 0
     for i in range(y.size):
         t, y_i = t_at[i], y[i]
         while first > 0 and t + lags[first - 1] >= t_of[0]:
@@ -139,46 +133,42 @@ def one_way(
             leaves[end] = i
         if first >= end:
             continue
-        for k in range(n):
-            q[k] = t + lags[k]
-        start = interpolate(q, first, end, per_step, t_of, f_of, slope, start, stops, x)
-        for k in range(first, min(end, reached)):
-            x0[k], y0[k] = x[k], y_i
-        reached = first
-        row_x, row_x0, row_y0 = x[first:end], x0[first:end], y0[first:end]
-        row_sum_x, row_sum_xx, row_sum_xy = sum_x[first:end], sum_xx[first:end], sum_xy[first:end]
+        start = interpolate(t, roomy, first, end, per_step, t_of, f, slope, start, x)
+        row_x, row_sum_x = x[first:end], sum_x[first:end]
+        row_sum_xx, row_sum_xy = sum_xx[first:end], sum_xy[first:end]
         for k in range(end - first):
-            dx = row_x[k] - row_x0[k]
-            row_sum_x[k] += dx
-            row_sum_xx[k] += dx * dx
-            row_sum_xy[k] += dx * (y_i - row_y0[k])
-    return pearson(sum_x, sum_xx, sum_xy, y0, y, enters, leaves, np.var(f_of), max(min_points, 2))
+            row_sum_x[k] += row_x[k]
+            row_sum_xx[k] += row_x[k] * row_x[k]
+            row_sum_xy[k] += row_x[k] * y_i
+    sums = (sum_x, sum_xx, sum_xy)
+    return pearson(sums, t_at, y, t_of, f, lags, enters, leaves, max(min_points, 2))
 
 
 @njit(cache=True, nogil=True)
 def pearson(
-    sum_x: Floats,
-    sum_xx: Floats,
-    sum_xy: Floats,
-    y0: Floats,
+    sums: tuple[Floats, Floats, Floats],
+    t_at: Floats,
     y: Floats,
+    t_of: Floats,
+    f: Floats,
+    lags: Floats,
     enters: Ints,
     leaves: Ints,
-    var_of: float,
     min_points: int,
 ) -> Floats:
     """Return r of each lag from its sums.
 
     Parameters
     ----------
-    sum_x, sum_xx, sum_xy, y0 : float64 (k,)
-        Sums of x, x^2 and x (y - y0) for the epochs that overlap, x about any value near them.
-    y : float64 (n,)
-        Fluxes about their mean.
+    sums : three float64 (k,)
+        Sums of x, x^2 and x y for the epochs that overlap.
+    t_at, y : float64 (n,)
+        Curve taken as it is, its fluxes about their mean.
+    t_of, f : float64 (m,)
+        Curve that is interpolated, its fluxes about their mean.
+    lags : float64 (k,)
     enters, leaves : int64 (k,)
         Epochs ``enters`` to ``leaves`` - 1 overlap; none if ``leaves <= enters``.
-    var_of : float
-        Variance of the whole interpolated curve.
     min_points : int
         At least 2.
 
@@ -188,27 +178,52 @@ def pearson(
         NaN with too few points, or where either curve varies over them by less than 1e-5 of its
         whole scatter: there r would be made of rounding.
     """
-    r = np.full(sum_x.size, np.nan)
+    sum_x, sum_xx, sum_xy = sums
+    r, n = np.empty(lags.size), np.empty(lags.size)
+    sum_y, sum_yy = np.empty(lags.size), np.empty(lags.size)
     run_y, run_yy = np.zeros(y.size + 1), np.zeros(y.size + 1)
     for i in range(y.size):
         run_y[i + 1] = run_y[i] + y[i]
         run_yy[i + 1] = run_yy[i] + y[i] * y[i]
-    var_at = run_yy[y.size] / y.size
-    for k in range(r.size):
-        a, b = enters[k], leaves[k]
-        n = b - a
-        if n < min_points:
-            continue
-        mean_y = (run_y[b] - run_y[a]) / n
-        var_y = (run_yy[b] - run_yy[a]) / n - mean_y * mean_y
-        if var_y < 0.01 * var_at:  # the difference of running sums has lost digits
-            mean_y, var_y = np.mean(y[a:b]), np.var(y[a:b])
-        mean_x = sum_x[k] / n
-        var_x = sum_xx[k] / n - mean_x * mean_x
-        if var_x > 1e-10 * var_of and var_y > 1e-10 * var_at:
-            covariance = sum_xy[k] / n - mean_x * (mean_y - y0[k])
-            r[k] = covariance / np.sqrt(var_x * var_y)
+    var_at, var_of = run_yy[y.size] / y.size, np.mean(f * f)
+    for k in range(lags.size):
+        a, b = np.uintp(enters[k]), np.uintp(max(leaves[k], enters[k]))
+        n[k] = leaves[k] - enters[k]
+        sum_y[k], sum_yy[k] = run_y[b] - run_y[a], run_yy[b] - run_yy[a]
+    # No branches here, so that several lags are done at a time; what needs care comes after.
+    for k in range(lags.size):
+        per = 1.0 / max(n[k], 1.0)
+        mean_x, mean_y, mean_xx = sum_x[k] * per, sum_y[k] * per, sum_xx[k] * per
+        var_x, var_y = mean_xx - mean_x * mean_x, sum_yy[k] * per - mean_y * mean_y
+        covariance = sum_xy[k] * per - mean_x * mean_y
+        r[k] = covariance / np.sqrt(max(var_x * var_y, 1e-300))
+        few, still = n[k] < min_points, var_x < 1e-10 * var_of
+        lost = (var_x < 1e-4 * mean_xx) | (var_y < 1e-3 * var_at)  # digits, by the differences
+        n[k] = 0.0 if few | still | lost else n[k]
+    for k in range(lags.size):
+        if n[k] == 0.0:
+            r[k] = np.nan
+            a, b = enters[k], leaves[k]
+            if b - a >= min_points:
+                r[k] = directly(t_at[a:b] + lags[k], y[a:b], t_of, f, var_at, var_of)
     return r
+
+
+@njit(cache=True, nogil=True)
+def directly(
+    when: Floats, y: Floats, t_of: Floats, f: Floats, var_at: float, var_of: float
+) -> float:
+    """Return r at one lag from differences to the means of the points that overlap.
+
+    Slower than from the sums, but without their rounding where a curve varies little about a level
+    far from its mean.
+    """
+    x = np.interp(when, t_of, f)
+    dx, dy = x - np.mean(x), y - np.mean(y)
+    var_x, var_y = np.mean(dx * dx), np.mean(dy * dy)
+    if var_x > 1e-10 * var_of and var_y > 1e-10 * var_at:
+        return float(np.mean(dx * dy) / np.sqrt(var_x * var_y))
+    return np.nan
 
 
 @njit(cache=True, nogil=True)

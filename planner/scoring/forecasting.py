@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass, replace
 from typing import NamedTuple
 
@@ -10,7 +10,6 @@ import numpy as np
 from numpy.typing import NDArray
 
 from planner.base.seeds import stream
-from planner.base.workers import each
 from planner.lightcurves import FRACTION_PER_MAG
 from planner.model.campaign import Layout
 from planner.model.trial import Prospect
@@ -34,7 +33,6 @@ __all__ = [
     "ambiguity_of",
     "design_of",
     "forecast_layout",
-    "forecast_layouts",
     "forecast_target",
 ]
 
@@ -48,8 +46,8 @@ BIN = 1.0 / 16.0
 """Epochs are averaged over this share of the lag, the timescale or the span: variability on so
 short a time is smeared by the response and tells little of the lag."""
 
-TOGETHER = 12
-"""Layouts of one target in one task: they share the draws."""
+CURVE = 161
+"""Lags at which an ambiguity curve is worked out."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -137,35 +135,6 @@ def _forecast(
     return LayoutForecast(target, layout, success, float(np.median(errors)), **costs)
 
 
-def _forecast_some(task: tuple[Setting, Prospect, Sequence[Layout]]) -> list[LayoutForecast]:
-    return forecast_target(*task)
-
-
-def forecast_layouts(
-    setting: Setting,
-    prospects: Sequence[Prospect],
-    layouts: Sequence[Layout],
-    *,
-    workers: int,
-    progress: Callable[[str, int, int], None],
-) -> tuple[LayoutForecast, ...]:
-    """Return every layout's information forecast, by target, the most promising first."""
-    tasks = [
-        (setting, p, layouts[k : k + TOGETHER])
-        for p in prospects
-        for k in range(0, len(layouts), TOGETHER)
-    ]
-    found: list[LayoutForecast] = []
-    order = {p.forecast.name: i for i, p in enumerate(prospects)}
-    place = {layout: i for i, layout in enumerate(layouts)}
-    for _, promises in each(_forecast_some, tasks, workers):
-        found += promises
-        progress("forecast", len(found), len(prospects) * len(layouts))
-    return tuple(
-        sorted(found, key=lambda f: (order[f.target], -f.success, f.error, place[f.layout]))
-    )
-
-
 def design_of(setting: Setting, prospect: Prospect, layout: Layout, trial: int) -> Design:
     """Return epochs, errors and truth of one trial, as the information forecast takes them."""
     draw = _draw(setting, prospect, trial)
@@ -210,5 +179,5 @@ def ambiguity_of(setting: Setting, prospect: Prospect, layout: Layout) -> Ambigu
     case = replace(prospect, forecast=median)
     placing = place_in(prospect, layout)
     span = float(placing.last[-1] - placing.first[0])
-    lags = np.linspace(*search_of(prospect, span), 241)
+    lags = np.linspace(*search_of(prospect, span), CURVE)
     return ambiguity(design_of(setting, case, layout, 0), lags)

@@ -1,9 +1,10 @@
 """Expected recovery against full recoveries; run as ``python bench_information.py [LAYOUTS]``.
 
 Each layout has a season, cadences, losses, errors and a lag of its own. Eight draws of lag,
-walk, response and lost nights go to the forecast, close epochs averaged as for a layout; full recoveries of fresh light curves, with
-every parameter unknown, run through the same eight draws. Prints one line for each layout, then
-correlation and mean absolute difference of the two rates of success and the time of one draw.
+walk, response and lost nights go to the forecast, close epochs averaged as for a layout; full
+recoveries of fresh light curves, with every parameter unknown, run through the same eight draws.
+Prints one line for each layout, then correlation and mean absolute difference of the two rates of
+success and the time of one draw.
 Without an argument: 64 layouts of 120 recoveries each, some minutes on one core. With the argument
 ``forecasts``, only the time of forecasting 1000 layouts with 8 draws each on two cores, from 100.
 """

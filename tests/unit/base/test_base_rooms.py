@@ -1,4 +1,3 @@
-import operator
 import os
 from zlib import crc32
 
@@ -8,7 +7,6 @@ import pytest
 from planner.base.errors import InputError, OutputError, PlanError, Problem
 from planner.base.files import MARK, claim_folder, replacing, write_bytes
 from planner.base.seeds import stream
-from planner.base.workers import each
 
 
 def test_streams_depend_on_every_word_and_on_nothing_else():
@@ -84,9 +82,3 @@ def test_a_file_in_the_folders_place_is_refused(tmp_path):
     (tmp_path / "plan").write_text("")
     with pytest.raises(OutputError, match="cannot be used"):
         claim_folder(tmp_path / "plan", "abc", replace=False)
-
-
-@pytest.mark.parametrize("workers", [1, 2])
-def test_each_task_is_done_once_whatever_the_workers(workers):
-    results = dict(each(operator.neg, list(range(7)), workers))
-    assert results == {i: -i for i in range(7)}

@@ -3,9 +3,11 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
+from planner.base.workers import Workers
 from planner.model.campaign import Layout
-from planner.scoring import setting_of
-from planner.scoring.forecasting import forecast_layout, forecast_layouts, forecast_target
+from planner.model.trial import Offer
+from planner.scoring import Store, Tools, forecast_offers, setting_of
+from planner.scoring.forecasting import forecast_layout, forecast_target
 from planner.scoring.trials import COSTS, Task, run_trials
 
 LAYOUTS = (Layout(3, 1, 120, 1), Layout(6, 1, 60, 1), Layout(12, 2, 90, 1))
@@ -45,17 +47,16 @@ def test_too_few_epochs_promise_nothing_but_cost_their_hours(setting, prospect):
 
 
 @pytest.mark.slow
-def test_layouts_are_ranked_by_target_whatever_the_workers(setting, prospect):
+def test_forecasts_are_the_same_whatever_the_workers_and_are_kept(setting, prospect, tmp_path):
     other = replace(prospect, forecast=replace(prospect.forecast, name="Another"))
-    told = []
-    alone, shared = (
-        forecast_layouts(
-            setting, [prospect, other], LAYOUTS, workers=workers,
-            progress=lambda *step: told.append(step),
-        )
-        for workers in (1, 2)
-    )  # fmt: skip
-    assert alone == shared
-    assert [f.target for f in alone] == [prospect.forecast.name] * 3 + ["Another"] * 3
-    assert alone[0].success >= alone[1].success >= alone[2].success
-    assert told[-1] == ("forecast", 6, 6)
+    offers = [Offer(LAYOUTS, (((1.0, 1.0), p),)) for p in (prospect, other)]
+    told, store = [], Store(tmp_path / "kept")
+    found = []
+    for count, kept in ((1, Store(None)), (2, store), (1, store)):
+        told.clear()
+        with Workers(count) as workers:
+            tools = Tools(workers, kept, lambda *step: told.append(step[:3]))
+            found.append(forecast_offers(setting, offers, tools))
+    assert found[0] == found[1] == found[2]
+    assert told == [("forecast", 6, 6)]
+    assert [[f.layout for f in mine] for mine in found[0]] == [list(LAYOUTS)] * 2
