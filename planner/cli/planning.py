@@ -217,7 +217,7 @@ def plan(options: Namespace) -> int:
         say(f"\n{r.target}: {r.why}.")
         if r.causes:
             wants = "; ".join(f"{c.want} ({c.share:.0%})" for c in r.causes[:3])
-            say(f"  failed trials want {wants}.")
+            say(f"  its failed trials lack {wants}.")
         for rank, h in enumerate(r.helps[:3], start=1):
             say(
                 f"  {rank}. {h.change}: {h.gain:+.0%} ({h.gain_lo:+.0%} to {h.gain_hi:+.0%}) for "

@@ -196,10 +196,11 @@ def pearson(
         mean_x, mean_y, mean_xx = sum_x[k] * per, sum_y[k] * per, sum_xx[k] * per
         var_x, var_y = mean_xx - mean_x * mean_x, sum_yy[k] * per - mean_y * mean_y
         covariance = sum_xy[k] * per - mean_x * mean_y
-        r[k] = covariance / np.sqrt(max(var_x * var_y, 1e-300))
-        few, still = n[k] < min_points, var_x < 1e-10 * var_of
-        lost = (var_x < 1e-4 * mean_xx) | (var_y < 1e-3 * var_at)  # digits, by the differences
-        n[k] = 0.0 if few | still | lost else n[k]
+        few, still = n[k] < min_points, var_x <= 1e-10 * var_of
+        lost = (var_x < 1e-4 * mean_xx) | (var_y <= 1e-3 * var_at)  # digits, by the differences
+        sound = not (few | still | lost)
+        r[k] = covariance / np.sqrt(var_x * var_y if sound else 1.0)
+        n[k] = n[k] if sound else 0.0
     for k in range(lags.size):
         if n[k] == 0.0:
             r[k] = np.nan

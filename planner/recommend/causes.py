@@ -31,13 +31,13 @@ ALIAS = 2.0
 """A claim off by more than so many times the tolerance is taken for an alias."""
 
 WANTS = {
-    "sky": "clear nights: weather made a gap or took epochs",
+    "sky": "clear nights (weather made a gap or took epochs)",
     "noise": "signal-to-noise",
-    "variability": "variability: the target was quieter than expected",
-    "epochs": "epochs: too sparse",
-    "season": "season: too short, or too few, for the lag",
-    "alias": "a way to tell aliases apart: another lag fits as well",
-    "method": "a better method, or several of these together",
+    "variability": "variability (the target was quieter than expected)",
+    "epochs": "denser epochs",
+    "season": "longer or more seasons",
+    "alias": "a way to tell aliases apart",
+    "method": "a better method, or several things at once",
 }
 
 

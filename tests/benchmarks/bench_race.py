@@ -83,7 +83,9 @@ def compare(success, hours, promise):
     """Print the table."""
     targets, layouts, all_trials = success.shape
     print(f"{targets} targets, {layouts} layouts, reference {all_trials} trials of each layout")
-    print("goal  budget  fewer  other advice  of it beyond 0.03  below the goal  grid: other advice")
+    print(
+        "goal  budget  fewer  other advice  of it beyond 0.03  below the goal  grid: other advice"
+    )
     for goal in (0.3, 0.5, 0.8):
         for most in [m for m in (100, 400, 2000) if m <= all_trials]:
             taken = other = beyond = below = grid_other = 0

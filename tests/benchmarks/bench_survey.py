@@ -77,9 +77,8 @@ def survey(targets):
     layout_ms = 1e3 * (cpu_s() - before) / len(found)
     print(f"  all        {total:8.1f} s  {1e3 * total / targets:8.1f} ms a target")
     print(f"  one layout {layout_ms:.1f} ms of processor time; {hopeful} layouts reach the goal")
-    print(
-        f"  peak memory {peak_mb():.0f} MB, store {kept_mb:.1f} MB; 1000 targets {1000 * total / targets / 60:.1f} min"
-    )
+    print(f"  peak memory {peak_mb():.0f} MB, store {kept_mb:.1f} MB")
+    print(f"  1000 targets: {1000 * total / targets / 60:.1f} min")
 
 
 if __name__ == "__main__":

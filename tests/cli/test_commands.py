@@ -1,11 +1,8 @@
 """Whole commands: what they print, what they write, how they end."""
 
 import json
-import os
-import signal
 import subprocess
 import sys
-import time
 from pathlib import Path
 
 import numpy as np
@@ -169,40 +166,6 @@ def test_the_run_can_be_repeated_from_its_record(planned):
     assert {"numpy", "astropy", "python"} <= set(record["versions"])
     (digest,) = record["files"].values()
     assert len(digest) == 64
-
-
-@pytest.mark.slow
-def test_two_workers_write_the_same_bytes(planned, tmp_path):
-    (tmp_path / "small.yaml").write_text(FILE)
-    done = run("plan", "small.yaml", "--out", "again", "--workers", "2", cwd=tmp_path)
-    assert done.returncode == 0, done.stderr
-    one, two = contents(planned), contents(tmp_path / "again")
-    one.pop("run.json"), two.pop("run.json")  # they name the input file as it was given
-    assert one.keys() == two.keys()
-    assert [name for name in one if one[name] != two[name]] == []
-
-
-@pytest.mark.slow
-def test_a_killed_run_goes_on_and_writes_the_same_bytes(planned, tmp_path):
-    (tmp_path / "small.yaml").write_text(FILE)
-    words = [sys.executable, "-m", "planner", "plan", "small.yaml", "--out", "again"]
-    started = subprocess.Popen(
-        [*words, "--workers", "2"], cwd=tmp_path, start_new_session=True,
-        stdout=subprocess.DEVNULL, stderr=subprocess.DEVNULL,
-    )  # fmt: skip
-    store = tmp_path / "again" / ".trials.sqlite-wal"
-    deadline = time.monotonic() + 120
-    while not (store.exists() and store.stat().st_size > 5000) and time.monotonic() < deadline:
-        time.sleep(0.02)
-    os.killpg(started.pid, signal.SIGKILL)
-    started.wait()
-    left = contents(tmp_path / "again")
-    assert "report.html" not in left, "killed too late to show anything"
-    done = run("plan", "small.yaml", "--out", "again", "--workers", "1", cwd=tmp_path)
-    assert done.returncode == 0, done.stderr
-    one, two = contents(planned), contents(tmp_path / "again")
-    one.pop("run.json"), two.pop("run.json")
-    assert [name for name in one if one[name] != two[name]] == []
 
 
 @pytest.mark.slow

@@ -56,7 +56,8 @@ def test_layouts_are_ones_that_an_observer_would_believe(plan):
 def test_short_seasons_lose_long_lags(plan):
     scores = Table.read(plan / "scores.ecsv")
     rows = scores[(scores["target"] == "3C 120") & (scores["cadence_line"] == 3)]
-    by_length = {row["season_length"]: row["success"] for row in rows}
+    # Forecasts: not every layout needed trials.
+    by_length = {row["season_length"]: row["forecast"] for row in rows}
     assert by_length[30] < by_length[120]
 
 

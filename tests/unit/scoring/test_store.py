@@ -57,13 +57,6 @@ def test_many_come_back_at_once(tmp_path):
     assert {k: v["a"][0] for k, v in found.items()} == {f"k{i}": float(i) for i in range(1200)}
 
 
-def test_a_store_without_a_file_keeps_nothing():
-    store = Store(None)
-    store.put("k", {"a": np.zeros(1)})
-    assert store.get("k") is None
-    store.close()
-
-
 def test_a_damaged_row_is_missing_and_overwritten(tmp_path):
     store = Store(tmp_path / "kept")
     store.put_many(many(2))

@@ -102,3 +102,10 @@ def test_a_digest_stands_for_its_record(prospect):
     assert digests.of(replace(prospect)) == digests.of(prospect)
     assert digests.of(line) != digests.of(prospect)
     assert len({digests.of((float(i),)) for i in range(100)}) == 100  # short-lived records too
+
+
+def test_a_store_without_a_file_keeps_nothing():
+    store = Store(None)
+    store.put("k", {"a": np.zeros(1)})
+    assert store.get("k") is None
+    store.close()
