@@ -146,3 +146,5 @@ class Score:
     trials: int
     note: str
     """Why the layout was not tried, or in what it was cut short; else empty."""
+    added: bool = False
+    """Looked at between the candidates."""

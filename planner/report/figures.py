@@ -43,29 +43,26 @@ def success_figure(scores: Sequence[Score], chosen: Score, goal: float) -> Figur
     """Draw the success grid of one target: cadence against season length, a panel per seasons.
 
     The goal's contour and the advised layout are marked; where no trials were needed the forecast
-    stands, in italics; grey cells could not be scheduled. Continuum cadence, exposures and shift
+    stands, in italics; a dash: could not be scheduled. Continuum cadence, exposures and shift
     are those of the advised layout.
     """
     kept = [s for s in scores if _rest(s.layout) == _rest(chosen.layout)]
-    cadences = sorted({s.layout.cadence_line_nights for s in kept})
-    lengths = sorted({s.layout.season_length_d for s in kept})
+    # Of the layouts looked at between the candidates the table tells.
+    shown = [s for s in kept if not s.added or s.layout == chosen.layout]
+    cadences = sorted({s.layout.cadence_line_nights for s in shown})
+    lengths = sorted({s.layout.season_length_d for s in shown})
     numbers = sorted({s.layout.seasons for s in kept})
     with styled():
         width = 1.6 + max(3.1, 0.6 * len(lengths)) * len(numbers)
         figure = new_figure(width, 1.3 + 0.45 * len(cadences))
         axes = figure.subplots(1, len(numbers), sharey=True, squeeze=False)[0]
         for ax, number in zip(axes, numbers, strict=True):
-            grid = np.full((len(cadences), len(lengths)), np.nan)
-            tried = np.zeros(grid.shape, dtype=bool)
-            for s in kept:
-                if s.layout.seasons == number and s.success_hi > 0:
-                    at = (
-                        cadences.index(s.layout.cadence_line_nights),
-                        lengths.index(s.layout.season_length_d),
-                    )
-                    tried[at] = s.trials > 0
-                    grid[at] = s.success if s.trials else s.promise
-            image = _grid_panel(ax, grid, tried, goal)
+            image = _grid_panel(
+                ax,
+                _cells(kept, cadences, lengths, number),
+                (len(cadences), len(lengths)),
+                goal,
+            )
             if number == chosen.layout.seasons:
                 ax.plot(
                     lengths.index(chosen.layout.season_length_d),
@@ -92,25 +89,44 @@ def _rest(layout: Layout) -> tuple[float, ...]:
     return (layout.cadence_continuum_nights, layout.shift_d, *layout.exposures)
 
 
-def _grid_panel(ax: Axes, grid: np.ndarray, tried: np.ndarray, goal: float) -> AxesImage:
+def _cells(
+    scores: Sequence[Score], cadences: Sequence[float], lengths: Sequence[float], seasons: int
+) -> dict[tuple[int, int], Score]:
+    """Return the scores of one panel by row and column."""
+    return {
+        (
+            cadences.index(s.layout.cadence_line_nights),
+            lengths.index(s.layout.season_length_d),
+        ): s
+        for s in scores
+        if s.layout.seasons == seasons
+        and s.layout.cadence_line_nights in cadences
+        and s.layout.season_length_d in lengths
+    }
+
+
+def _grid_panel(
+    ax: Axes, cells: dict[tuple[int, int], Score], shape: tuple[int, int], goal: float
+) -> AxesImage:
     """Draw one panel of shades with its numbers and the goal's contour; return the shades."""
     ax.set_facecolor("#d9d9d9")
-    image = ax.imshow(
-        np.where(tried, grid, np.nan), vmin=0, vmax=1, cmap=SHADES, aspect="auto", origin="lower"
-    )
-    for (row, column), value in np.ndenumerate(grid):
-        known = np.isfinite(value)
+    success = np.full(shape, np.nan)
+    for at, s in cells.items():
+        success[at] = s.success
+        can = s.success_hi > 0
+        value = s.success if s.trials else s.promise
         ax.text(
-            column,
-            row,
-            f"{100 * value:.0f}" if known else "–",
+            at[1],
+            at[0],
+            f"{100 * value:.0f}" if can else "–",
             ha="center",
             va="center",
             fontsize=8,
-            style="normal" if tried[row, column] else "italic",
-            color="white" if tried[row, column] and value < 0.55 else "black",
+            style="normal" if s.trials else "italic",
+            color="white" if s.trials and value < 0.55 else "black",
         )
-    _goal_contour(ax, tried & (np.nan_to_num(grid, nan=-1.0) >= goal))
+    image = ax.imshow(success, vmin=0, vmax=1, cmap=SHADES, aspect="auto", origin="lower")
+    _goal_contour(ax, np.nan_to_num(success, nan=-1.0) >= goal)
     return image
 
 

@@ -45,7 +45,8 @@ class Raced:
     """The settled race of one target."""
 
     offer: Offer
-    """With the layouts that were added on the way."""
+    """With the layouts that were added on the way, after the candidates."""
+    candidates: int
     table: TrialTable
     forecasts: tuple[LayoutForecast, ...]
     """In the order of the layouts."""
@@ -165,6 +166,7 @@ def race_targets(setting: Setting, offers: Sequence[Offer], tools: Tools) -> lis
         In the order of `offers`.
     """
     forecasts = forecast_offers(setting, offers, tools)
+    candidates = [len(offer.layouts) for offer in offers]
     stage = _OneStage(tools.progress)
     tools = replace(tools, progress=stage)
     racers = [_Racer(setting, offer, mine) for offer, mine in zip(offers, forecasts, strict=True)]
@@ -176,7 +178,10 @@ def race_targets(setting: Setting, offers: Sequence[Offer], tools: Tools) -> lis
             running = _one_round(running, tools)
         running = _joined(winners, tools)
     stage.end()
-    return [Raced(r.offer, r.table(), tuple(r.forecasts), r.all_limits()) for r in racers]
+    return [
+        Raced(r.offer, n, r.table(), tuple(r.forecasts), r.all_limits())
+        for r, n in zip(racers, candidates, strict=True)
+    ]
 
 
 def _one_round(racers: Sequence[_Racer], tools: Tools) -> list[_Racer]:

@@ -54,6 +54,7 @@ def raced_scores(raced: Raced) -> list[Score]:
             i,
             {name: float(getattr(forecast, name)) for name in COSTS},
             promise=forecast.success,
+            added=i >= raced.candidates,
         )
         for i, (layout, forecast) in enumerate(
             zip(raced.offer.layouts, raced.forecasts, strict=True)
@@ -62,7 +63,13 @@ def raced_scores(raced: Raced) -> list[Score]:
 
 
 def _score(
-    prospect: Prospect, table: TrialTable, i: int, costs: Mapping[str, float], promise: float
+    prospect: Prospect,
+    table: TrialTable,
+    i: int,
+    costs: Mapping[str, float],
+    promise: float,
+    *,
+    added: bool = False,
 ) -> Score:
     layout, trials = table.layouts[i], int(table.trials[i])
     placing = place_in(prospect, layout)
@@ -93,5 +100,6 @@ def _score(
         false_claims_hi=float(false_hi) if can else 0.0,
         trials=trials if can else 0,
         note=note,
+        added=added,
         **costs,
     )
