@@ -13,6 +13,7 @@ from planner.base.workers import Workers
 from planner.campaign import Reading
 from planner.model.plan import Plan
 from planner.model.trial import Prospect, Score, TrialTable
+from planner.schedule import Request, requests_of
 from planner.scoring import Setting, ambiguity_of, example_of, setting_of
 
 __all__ = ["write_plan"]
@@ -36,10 +37,15 @@ def write_plan(plan: Plan, reading: Reading, folder: Path, workers: Workers) -> 
         "helps": export.helps_table(plan.recommendations),
         "sensitivity": export.sensitivity_table(plan.sensitivities),
         "lists": export.subsets_table(plan.subsets),
+        "blocks": export.blocks_table(plan.campaign, _requests(plan), plan.visits),
     }
     for name, table in tables.items():
         export.write_ecsv(table, folder / f"{name}.ecsv")
     export.write_csv(schedule, folder / "schedule.csv")
+    export.write_csv(tables["blocks"], folder / "blocks.csv")
+    write_bytes(folder / "schedule.ics", export.calendar(plan.campaign, schedule))
+    write_bytes(folder / "schedule.json", export.schedule_json(plan.campaign, schedule))
+    write_bytes(folder / "nights.html", export.night_sheets(plan.campaign, plan.skies, plan.visits))
     figures = draw_figures(plan, workers)
     (folder / "figures").mkdir(exist_ok=True)
     stems = file_names(figures)
@@ -51,6 +57,16 @@ def write_plan(plan: Plan, reading: Reading, folder: Path, workers: Workers) -> 
         report.page(plan, figures, export.as_rows(tables["epochs"]), defaults),
     )
     export.run_json(plan.run, folder / "run.json")
+
+
+def _requests(plan: Plan) -> tuple[Request, ...]:
+    """Return what the schedule was made from."""
+    chosen = [
+        (prospect, advice.score.layout)
+        for prospect, advice in zip(plan.prospects, plan.recommendations, strict=True)
+        if advice.scheduled and advice.score is not None
+    ]
+    return requests_of(plan.campaign, chosen)
 
 
 class _Card(NamedTuple):

@@ -14,7 +14,7 @@ import time
 
 import numpy as np
 
-from planner.base.workers import each
+from planner.base.workers import Workers
 from planner.lightcurves import draw_pair
 from planner.recovery.expected import expected_recovery
 from planner.recovery.information import make_design, with_normal_points
@@ -100,13 +100,14 @@ def forecast(k):
 
 
 def time_forecasts(layouts=100, workers=2):
-    """Print the time of many forecasts; that of starting the processes is taken off."""
+    """Print the time of many forecasts, processes started beforehand."""
     start = time.perf_counter()
-    list(each(forecast, [0, 0], workers))
-    starting = time.perf_counter() - start
-    start = time.perf_counter()
-    list(each(forecast, list(range(layouts)), workers))
-    spent = time.perf_counter() - start - starting
+    with Workers(workers) as crew:
+        list(crew.each(forecast, [0, 0]))
+        starting = time.perf_counter() - start
+        start = time.perf_counter()
+        list(crew.each(forecast, list(range(layouts))))
+        spent = time.perf_counter() - start
     print(f"starting {workers} processes {starting:.1f} s")
     print(f"{layouts} layouts x 8 draws {spent:.1f} s; 1000 layouts {1000 / layouts * spent:.0f} s")
 
