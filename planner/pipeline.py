@@ -164,7 +164,7 @@ def make_plan(reading: Reading, tools: Tools) -> Plan:
     if not any(offer.plain.seasons for offer in offers):
         raise PlanError(no_window(campaign))
     raced = race_all(campaign, offers, tools)
-    advice = advise(campaign, forecasts, raced, tools)
+    advice = advise(campaign, forecasts, skies, raced, tools)
     prospects = tuple(_prospect(r, a) for r, a in zip(raced, advice, strict=True))
     setting = setting_of(campaign)
     trials = min(TRIALS_AFTER, campaign.simulation.trials)

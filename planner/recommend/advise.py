@@ -2,11 +2,11 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
-from dataclasses import dataclass, replace
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
 
 from planner.model.campaign import Campaign
-from planner.model.plan import Cause, Help, Recommendation
+from planner.model.plan import Cause, Help, Recommendation, SiteSky
 from planner.model.target import Forecast
 from planner.model.trial import Prospect, Score
 from planner.recommend.causes import causes_of, mended
@@ -42,7 +42,11 @@ class _Case:
 
 
 def advise(
-    campaign: Campaign, forecasts: Sequence[Forecast], raced: Sequence[Raced], tools: Tools
+    campaign: Campaign,
+    forecasts: Sequence[Forecast],
+    skies: Mapping[str, SiteSky],
+    raced: Sequence[Raced],
+    tools: Tools,
 ) -> tuple[Recommendation, ...]:
     """Return a recommendation for each target, in order.
 
@@ -57,7 +61,7 @@ def advise(
             cases.append(_Case(index, best, reached, race.offer.prospect(best.layout), race))
     causes = _causes(campaign, cases, tools)
     missed = [c for c in cases if not c.reached and not hopeless(c.best, campaign.success)]
-    helps = _helps(campaign, forecasts, missed, tools)
+    helps = _helps(campaign, forecasts, skies, missed, tools)
     return tuple(
         recommend(
             target.name,
@@ -98,14 +102,23 @@ def _causes(
 
 
 def _helps(
-    campaign: Campaign, forecasts: Sequence[Forecast], cases: Sequence[_Case], tools: Tools
+    campaign: Campaign,
+    forecasts: Sequence[Forecast],
+    skies: Mapping[str, SiteSky],
+    cases: Sequence[_Case],
+    tools: Tools,
 ) -> dict[int, list[Help]]:
     """Try changes; the half with most gain per hour again, with more trials."""
+    by_last = {campaign.last_night: skies}
     tried: list[tuple[_Case, Change, Prospect]] = []
     for case in cases:
         for change in changes_for(campaign, case.best, case.prospect):
-            alone = replace(change.campaign, targets=(campaign.targets[case.index],))
-            prospect = prospect_of(alone, 0, forecasts[case.index], observe_sky(alone))
+            last = change.campaign.last_night
+            if last not in by_last:
+                by_last[last] = observe_sky(change.campaign)
+            prospect = prospect_of(
+                change.campaign, case.index, forecasts[case.index], by_last[last]
+            )
             tried.append((case, change, prospect))
     found: dict[int, list[Help]] = {}
     for first, most in zip((True, False), HELP_TRIALS, strict=True):

@@ -62,9 +62,9 @@ def tidy_pair(
 
 def _usable(t_d: ArrayLike, flux: ArrayLike, error: ArrayLike) -> tuple[Floats, Floats, Floats]:
     """Return the finite epochs."""
-    t, f, e = np.broadcast_arrays(
-        *(np.atleast_1d(np.asarray(a, dtype=np.float64)) for a in (t_d, flux, error))
-    )
+    t, f, e = (np.asarray(a, dtype=np.float64) for a in (t_d, flux, error))
+    if not t.shape == f.shape == e.shape or t.ndim != 1:
+        t, f, e = np.broadcast_arrays(*map(np.atleast_1d, (t, f, e)))
     usable = np.isfinite(t) & np.isfinite(f) & np.isfinite(e) & (e >= 0.0)
     return t[usable], f[usable], e[usable]
 

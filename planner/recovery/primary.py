@@ -3,12 +3,11 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
-from itertools import pairwise
 
 import numpy as np
 from numpy.typing import NDArray
 
-__all__ = ["PrimaryPeak", "overlap_weight", "primary_peak"]
+__all__ = ["PrimaryPeak", "median_step", "overlap_weight", "primary_peak"]
 
 Floats = NDArray[np.float64]
 
@@ -34,6 +33,14 @@ class PrimaryPeak:
     """Share of all (unweighted) lags between them."""
     others: tuple[tuple[float, float], ...]
     """Lag and share of every other peak that holds at least a twentieth, largest first."""
+    rival: float
+    """Height of the second tallest peak over that of this one; 0 if there is but one."""
+
+
+def median_step(t_d: Floats) -> float:
+    """Return the median interval of at least two ascending epochs, at a tenth of NumPy's cost."""
+    steps = np.sort(np.diff(t_d))
+    return float(0.5 * (steps[(steps.size - 1) // 2] + steps[steps.size // 2]))
 
 
 def overlap_weight(t1_d: Floats, t2_d: Floats, lags_d: Floats) -> Floats:
@@ -52,14 +59,16 @@ def overlap_weight(t1_d: Floats, t2_d: Floats, lags_d: Floats) -> Floats:
     if t1_d.size < 2 or t2_d.size == 0:
         return np.ones(lags_d.size)
     steps = np.diff(t1_d)
-    gaps = np.flatnonzero(steps > GAP * np.median(steps))
+    gaps = np.flatnonzero(steps > GAP * median_step(t1_d))
     starts = np.concatenate([t1_d[:1], t1_d[gaps + 1]])
     ends = np.concatenate([t1_d[gaps], t1_d[-1:]])
 
     def covered(lags: Floats) -> Floats:
-        at = t2_d[None, :] - lags[:, None]
-        part = np.searchsorted(starts, at, side="right") - 1
-        return np.asarray(((part >= 0) & (at <= ends[part])).sum(axis=1), dtype=np.float64)
+        inside = np.zeros(lags.size)
+        for start, end in zip(starts, ends, strict=True):
+            inside += np.searchsorted(t2_d, end + lags, side="right")
+            inside -= np.searchsorted(t2_d, start + lags, side="left")
+        return inside
 
     unshifted = covered(np.zeros(1))[0]
     share = np.minimum(covered(lags_d) / max(unshifted, 1.0), 1.0)
@@ -88,20 +97,26 @@ def primary_peak(lags_d: Floats, found_d: Floats, weight: Floats, duration_d: fl
     if not weights.any():
         weights = np.ones(found_d.size)
     width = max(SMOOTHING * duration_d, float(lags_d[1] - lags_d[0]))
-    away = (lags_d[:, None] - found_d[None, :]) / width
-    density = np.exp(-0.5 * away**2) @ weights
+    away = lags_d[:, None] / width - found_d / width
+    density = np.exp(-0.5 * np.square(away)) @ weights
     lows = 1 + np.flatnonzero((density[1:-1] <= density[:-2]) & (density[1:-1] < density[2:]))
     edges = np.concatenate([[0], lows, [lags_d.size - 1]])
-    spans = list(pairwise(edges.tolist()))
-    tops = [a + int(np.argmax(density[a : b + 1])) for a, b in spans]
-    main = int(np.argmax(density[tops]))
-    peaks = [
-        (float(lags_d[top]), float(np.mean((found_d >= lags_d[a]) & (found_d <= lags_d[b]))))
-        for top, (a, b) in zip(tops, spans, strict=True)
+    heights = np.maximum.reduceat(density, edges[:-1])
+    main = int(np.argmax(heights))
+    ordered = np.sort(found_d)
+    shares = (
+        np.searchsorted(ordered, lags_d[edges[1:]], side="right")
+        - np.searchsorted(ordered, lags_d[edges[:-1]], side="left")
+    ) / ordered.size
+    others = [
+        (float(lags_d[edges[i] + np.argmax(density[edges[i] : edges[i + 1]])]), float(shares[i]))
+        for i in np.flatnonzero(shares >= 0.05)
+        if i != main
     ]
-    others = sorted(
-        (p for i, p in enumerate(peaks) if i != main and p[1] >= 0.05), key=lambda p: -p[1]
-    )
     return PrimaryPeak(
-        float(lags_d[edges[main]]), float(lags_d[edges[main + 1]]), peaks[main][1], tuple(others)
+        lo_d=float(lags_d[edges[main]]),
+        hi_d=float(lags_d[edges[main + 1]]),
+        share=float(shares[main]),
+        others=tuple(sorted(others, key=lambda p: -p[1])),
+        rival=float(np.delete(heights, main).max(initial=0.0) / heights[main]),
     )

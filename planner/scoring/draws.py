@@ -4,6 +4,8 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
+from functools import lru_cache
+from itertools import accumulate
 from typing import NamedTuple
 
 import numpy as np
@@ -136,51 +138,49 @@ def draw_trial(setting: Setting, prospect: Prospect, trial: int) -> Draw:
     that join a stream have scales and zero points of their own. Noise disturbances act on the part
     of the errors that is not shared.
     """
-    forecast, simulation = prospect.forecast, setting.simulation
-    name = forecast.name
-    lag, amplitude, timescale, width = truth_of(setting, prospect, trial)
-    disturbance = DISTURBANCES[setting.disturbance]
-    driver = stream(setting.seed, "driver", name, trial)
+    return _draws(setting, prospect, trial, (UNRELATED if setting.unrelated else None,))[0]
+
+
+def draw_strangers(setting: Setting, prospect: Prospect, trial: int) -> tuple[Draw, ...]:
+    """Draw a trial with other lines: they vary like its own and know nothing of the continuum."""
+    return _draws(setting, prospect, trial, range(UNRELATED))
+
+
+def _draws(
+    setting: Setting, prospect: Prospect, trial: int, lines: Iterable[int | None]
+) -> tuple[Draw, ...]:
+    """Draw a trial once with each line: an unrelated one by its number, or None for its own."""
+    forecast, name = prospect.forecast, prospect.forecast.name
+    truth, scale = truth_of(setting, prospect, trial), _scale(setting, prospect, trial)
     x, y = draw_disturbed_pair(
-        driver, *_times(setting, prospect), timescale, lag, width, disturbance
-    )
-    scale = _scale(setting, prospect, trial)
-    light = continuum_flux(x, amplitude, forecast.agn_fraction)
-    if setting.unrelated:
-        line = _stranger(setting, prospect, trial, UNRELATED)
-    else:
-        echo = line_flux(y, amplitude, simulation.responsivity)
-        line = _measured(setting, prospect.line, echo, scale, "line", name, trial)
-    return Draw(
-        lag_obs_d=lag,
-        usable=sky_of_trial(setting, trial),
-        continuum=_measured(setting, prospect.continuum, light, scale, "continuum", name, trial),
-        line=line,
-    )
-
-
-def draw_strangers(
-    setting: Setting, prospect: Prospect, trial: int
-) -> tuple[tuple[Measured, ...], ...]:
-    """Draw lines that vary like the trial's own line and know nothing of the continuum."""
-    return tuple(_stranger(setting, prospect, trial, number) for number in range(UNRELATED))
-
-
-def _stranger(
-    setting: Setting, prospect: Prospect, trial: int, number: int
-) -> tuple[Measured, ...]:
-    name, kind = prospect.forecast.name, f"unrelated {number}"
-    truth = truth_of(setting, prospect, trial)
-    _, echo = draw_pair(
-        stream(setting.seed, kind, name, trial),
+        stream(setting.seed, "driver", name, trial),
         *_times(setting, prospect),
         truth.timescale_d,
         truth.lag_d,
         truth.width_d,
+        DISTURBANCES[setting.disturbance],
     )
-    flux = line_flux(echo, truth.amplitude_mag, setting.simulation.responsivity)
-    scale = _scale(setting, prospect, trial)
-    return _measured(setting, prospect.line, flux, scale, kind, name, trial)
+    light = continuum_flux(x, truth.amplitude_mag, forecast.agn_fraction)
+    continuum = _measured(setting, prospect.continuum, light, scale, "continuum", name, trial)
+    usable = sky_of_trial(setting, trial)
+
+    def line(number: int | None) -> tuple[Measured, ...]:
+        kind, echo = "line", y
+        if number is not None:
+            kind, echo = f"unrelated {number}", _stranger(setting, prospect, trial, number, truth)
+        flux = line_flux(echo, truth.amplitude_mag, setting.simulation.responsivity)
+        return _measured(setting, prospect.line, flux, scale, kind, name, trial)
+
+    return tuple(Draw(truth.lag_d, usable, continuum, line(number)) for number in lines)
+
+
+def _stranger(
+    setting: Setting, prospect: Prospect, trial: int, number: int, truth: Truth
+) -> Floats:
+    """Return the response, on the line's nights, to a driver of its own."""
+    rng = stream(setting.seed, f"unrelated {number}", prospect.forecast.name, trial)
+    _, times = _times(setting, prospect)
+    return draw_pair(rng, times[:0], times, truth.timescale_d, truth.lag_d, truth.width_d)[1]
 
 
 def _times(setting: Setting, prospect: Prospect) -> tuple[Floats, Floats]:
@@ -192,7 +192,9 @@ def _times(setting: Setting, prospect: Prospect) -> tuple[Floats, Floats]:
 
 
 def _scale(setting: Setting, prospect: Prospect, trial: int) -> list[Floats]:
-    """Return what each night's spectra have in common, by telescope."""
+    """Return what each night's spectra have in common, by telescope; nothing where nothing has."""
+    if not any(n.scale_error for n in (*prospect.line, *prospect.continuum)):
+        return []
     nights = sum(n.night.size for n in prospect.line)
     normal = stream(setting.seed, "scale", prospect.forecast.name, trial).standard_normal(nights)
     return _by_feed(prospect.line, normal)
@@ -204,7 +206,8 @@ def _all(parts: Iterable[Floats]) -> Floats:
 
 def _by_feed(feeds: Sequence[FeedNights], values: Floats) -> list[Floats]:
     """Cut values over all nights of a stream into those of each telescope."""
-    return np.split(values, np.cumsum([n.night.size for n in feeds])[:-1])
+    ends = list(accumulate(n.night.size for n in feeds))
+    return [values[a:b] for a, b in zip([0, *ends], ends, strict=False)]
 
 
 def _measured(
@@ -217,17 +220,24 @@ def _measured(
     trial: int,
 ) -> tuple[Measured, ...]:
     """Return what each telescope of a stream measures on each of its nights."""
+    disturbance = DISTURBANCES[setting.disturbance]
     noise = stream(setting.seed, f"noise {kind}", name, trial).standard_normal(truth.size)
-    otherwise = stream(setting.seed, f"disturbed noise {kind}", name, trial)
-    joining = stream(setting.seed, f"joining {kind}", name, trial).standard_normal((len(feeds), 2))
+    deviates = _by_feed(feeds, noise)
+    if not disturbance.keeps_noise:
+        otherwise = stream(setting.seed, f"disturbed noise {kind}", name, trial)
+        deviates = [
+            disturbed_noise(otherwise, feed.best_mjd, z, disturbance)
+            for feed, z in zip(feeds, deviates, strict=True)
+        ]
+    unlike = np.zeros((1, 2))
+    if len(feeds) > 1:
+        joining = stream(setting.seed, f"joining {kind}", name, trial)
+        unlike = UNLIKE * np.tanh(joining.standard_normal((len(feeds), 2)))
     parts = []
-    for i, (feed, flux, z) in enumerate(
-        zip(feeds, _by_feed(feeds, truth), _by_feed(feeds, noise), strict=True)
-    ):
-        own = np.sqrt(np.maximum(feed.flux_error**2 - feed.scale_error**2, 0.0))
+    for i, (feed, flux, z) in enumerate(zip(feeds, _by_feed(feeds, truth), deviates, strict=True)):
+        own = np.sqrt(np.maximum(feed.flux_error**2 - feed.scale_error**2, 0.0)) * z
         shared = _shared_error(feed, i, scale)
-        own *= disturbed_noise(otherwise, feed.best_mjd, z, DISTURBANCES[setting.disturbance])
-        gain, zero = (1.0, 0.0) if i == 0 else (1.0, 0.0) + UNLIKE * np.tanh(joining[i])
+        gain, zero = (1.0, 0.0) if i == 0 else (1.0, 0.0) + unlike[i]
         parts.append(Measured(gain * (flux * (1.0 + shared) + own) + zero, gain * feed.flux_error))
     return tuple(parts)
 
@@ -241,22 +251,44 @@ def _shared_error(feed: FeedNights, number: int, scale: Sequence[Floats]) -> Flo
 
 
 def sky_of_trial(setting: Setting, trial: int) -> dict[str, NDArray[np.bool_]]:
-    """Return each telescope's usable nights in one trial.
+    """Return each telescope's usable nights in one trial; the arrays cannot be written to.
 
     The weather of a site is the same for every target and telescope; what is lost to technical
     trouble is drawn night by night for each telescope.
     """
-    nights = np.arange(setting.first_night, setting.first_night + setting.nights)
+    names = (name for name, _, _ in setting.telescopes)
+    usable = _usable_nights(
+        setting.seed,
+        setting.first_night,
+        setting.nights,
+        setting.climates,
+        setting.telescopes,
+        trial,
+    )
+    return dict(zip(names, usable, strict=True))
+
+
+@lru_cache(maxsize=1024)
+def _usable_nights(
+    seed: int,
+    first_night: int,
+    count: int,
+    climates: tuple[tuple[str, WeatherClimate], ...],
+    telescopes: tuple[tuple[str, str, float], ...],
+    trial: int,
+) -> tuple[NDArray[np.bool_], ...]:
+    """Return the usable nights by telescope; kept, because all targets and layouts share them."""
+    nights = np.arange(first_night, first_night + count)
     clear = {
         site: clear_nights(
-            climate,
-            nights,
-            stream(setting.seed, "weather", site, trial).uniform(size=(1, nights.size)),
+            climate, nights, stream(seed, "weather", site, trial).uniform(size=(1, count))
         )[0]
-        for site, climate in setting.climates
+        for site, climate in climates
     }
-    return {
-        name: clear[site]
-        & (stream(setting.seed, "technical", name, trial).uniform(size=nights.size) >= loss)
-        for name, site, loss in setting.telescopes
-    }
+    usable = tuple(
+        clear[site] & (stream(seed, "technical", name, trial).uniform(size=count) >= loss)
+        for name, site, loss in telescopes
+    )
+    for nights_of_one in usable:
+        nights_of_one.setflags(write=False)
+    return usable

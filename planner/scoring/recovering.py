@@ -2,8 +2,9 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
+from functools import partial
 from typing import NamedTuple
 
 import numpy as np
@@ -21,10 +22,11 @@ from planner.recovery import (
     lag_grid,
     lag_posterior,
     passes_cuts,
-    peak_correlation,
     recover_lag,
     search_range,
 )
+from planner.recovery.lag import MIN_SHARE, peak_correlations
+from planner.recovery.primary import median_step
 from planner.scoring.draws import Setting
 
 __all__ = [
@@ -39,6 +41,7 @@ __all__ = [
     "peaks_of_strangers",
     "recover",
     "search_of",
+    "settled",
 ]
 
 Floats = NDArray[np.float64]
@@ -68,6 +71,13 @@ WIDTHS = 3
 
 SEARCH_SIGMAS = 2.5
 """Lags up to so many standard deviations of the prior above its median are looked for."""
+
+SURE = 3.29
+"""Standard errors by which a cut must be passed or failed before resampling ends: 99.9 %."""
+
+# Covariances of the sample quantiles at 16, 50 and 84 % of a Gaussian, times the sample's size over
+# its variance: p (1 - q) / (density at p * density at q), for p <= q; textbook statistics.
+QUANTILES = np.array([[2.280, 0.822, 0.430], [0.822, 1.571, 0.822], [0.430, 0.822, 2.280]])
 
 
 @dataclass(frozen=True, slots=True)
@@ -116,6 +126,7 @@ def recover(
     label: str,
     trial: int,
     limit: float,
+    lag_true_d: float | None = None,
 ) -> Found | None:
     """Recover the lag of one trial; None where there are too few epochs to look for one.
 
@@ -127,13 +138,29 @@ def recover(
         Names the way of observing in the random stream of the resampling.
     limit : float
         Correlation that a claim must exceed besides what the rule asks.
+    lag_true_d : float or None
+        Lets a correlation's resampling end early only when it is sure, too, whether a claim is
+        right.
+
+    Notes
+    -----
+    Resampling ends as soon as the verdict is beyond reasonable doubt, see `settled`: lag and
+    interval may come from fewer resamples than the campaign file asks for.
     """
     if not enough(curves):
         return None
     if setting.simulation.method == "likelihood":
         found = _of_posterior(by_likelihood(setting, prospect, curves, span_d))
     else:
-        found = _of_result(by_correlation(setting, prospect, curves, span_d, label, trial, limit))
+        decided = partial(
+            settled,
+            resamples=setting.simulation.resamples,
+            rule=setting.success,
+            lag_true_d=lag_true_d,
+        )
+        found = _of_result(
+            by_correlation(setting, prospect, curves, span_d, label, trial, limit, decided)
+        )
     if setting.success.agree and _passes(found, setting.success):
         if setting.simulation.method == "likelihood":
             other = _of_result(by_correlation(setting, prospect, curves, span_d, label, trial))
@@ -175,9 +202,13 @@ def by_correlation(
     label: str,
     trial: int,
     limit: float = -np.inf,
+    decided: Callable[[LagResult], bool] | None = None,
 ) -> LagResult:
-    """Recover the lag by interpolated cross-correlation; arguments as for `recover`."""
-    sampling = float(np.median(np.diff(curves.t_continuum)))
+    """Recover the lag by interpolated cross-correlation; arguments as for `recover`.
+
+    All resamples are drawn unless `decided` ends it, see `recover_lag`.
+    """
+    sampling = median_step(curves.t_continuum)
     return recover_lag(
         *curves.columns(),
         lag_grid(*search_of(prospect, span_d), sampling),
@@ -185,7 +216,63 @@ def by_correlation(
         stream(setting.seed, "resampling", prospect.forecast.name, label, trial),
         r_max_above=max(setting.success.r_max_above, limit),
         detrend=setting.simulation.detrend,
+        decided=decided,
     )
+
+
+def settled(
+    result: LagResult, resamples: int, rule: SuccessRule, lag_true_d: float | None = None
+) -> bool:
+    """Say whether the resamples drawn so far leave no reasonable doubt about a trial's verdict.
+
+    Each cut must be passed or failed by `SURE` standard errors of what all resamples would still
+    change. Those of quantiles are a Gaussian's, with the scatter of the lags in the primary peak
+    or half their 68 % interval, whichever is larger; those of shares and of the heights of peaks
+    are a count's. All shrink by the square root of the share of resamples not yet drawn.
+
+    With few resamples neighbouring peaks may still merge, so that the doubt is a little larger
+    than stated: of 3227 resampled trials of the sample campaign, 0.5 % changed their claim, and
+    54 of 100 resamples were drawn on average.
+
+    Parameters
+    ----------
+    resamples : int
+        All that would be drawn.
+    lag_true_d : float or None
+        None: whether a claim is right does not matter.
+    """
+    doubt = SURE * np.sqrt(1.0 - result.drawn / resamples)
+    unsure = doubt * np.sqrt(MIN_SHARE * (1.0 - MIN_SHARE) / result.drawn)
+    if result.share < MIN_SHARE - unsure:
+        return True
+    if result.reason or result.share < MIN_SHARE + unsure:
+        return False
+    found, least = result.centroids_d.size, rule.in_peak_above
+    largest = max([result.in_peak, *(share for _, share in result.aliases[:1])])
+    unsure = doubt * np.sqrt(max(largest * (1.0 - largest), 1.0 / found) / found)
+    if largest < least - unsure:
+        return True
+    inside = result.in_peak * found
+    alone = 1.0 - result.rival > doubt * np.sqrt((1.0 + result.rival) / inside)
+    # Where a claim takes more than half of the lags, only the peak that has most can give one.
+    if result.in_peak < largest or (least < 0.5 and not alone):
+        return False
+    below, above = rule.error_below, rule.sigma_above
+    cuts = np.array([[0.0, 1.0, 0.0], [0.5, below, -0.5], [above, 1.0 - above, 0.0]])
+    cuts = cuts[np.isfinite(cuts).all(axis=1)]  # an infinite cut is none
+    margins = cuts @ (result.lag_lo_d, result.lag_d, result.lag_hi_d)
+    sigma = max(0.5 * (result.lag_hi_d - result.lag_lo_d), result.scatter_d)
+    error = doubt * sigma / np.sqrt(inside)
+    errors = error * np.sqrt(((cuts @ QUANTILES) * cuts).sum(axis=1))
+    if (margins < -errors).any():
+        return True
+    # The interval of a claim that another method must confirm is wanted in full.
+    if rule.agree or not (alone and largest > least + unsure and (margins > errors).all()):
+        return False
+    if lag_true_d is None:
+        return True
+    off = abs(abs(result.lag_d - lag_true_d) - rule.within * lag_true_d)
+    return bool(off > error * np.sqrt(QUANTILES[1, 1]))
 
 
 def peaks_of_strangers(
@@ -198,12 +285,9 @@ def peaks_of_strangers(
     strangers : sequence of (m,) arrays
         Fluxes at the line's epochs.
     """
-    sampling = float(np.median(np.diff(curves.t_continuum)))
+    sampling = median_step(curves.t_continuum)
     lags = lag_grid(*search_of(prospect, span_d), sampling)
-    return [
-        peak_correlation(*curves.columns()[:4], flux, curves.e_line, lags, detrend=detrend)
-        for flux in strangers
-    ]
+    return peak_correlations(*curves.columns()[:4], strangers, curves.e_line, lags, detrend=detrend)
 
 
 def by_likelihood(

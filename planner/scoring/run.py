@@ -18,7 +18,7 @@ from planner.scoring.trials import Task, Used
 
 __all__ = ["CHUNK", "MODEL_VERSION", "Arrays", "Progress", "Row", "Tools", "outcomes"]
 
-MODEL_VERSION = 8
+MODEL_VERSION = 9
 """Raised whenever the same inputs would give other outcomes; older kept results are then stale."""
 
 CHUNK = 10

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
+from typing import NamedTuple
 
 import numpy as np
 
@@ -37,7 +38,8 @@ def score_of(prospect: Prospect, table: TrialTable) -> Score:
     trials.
     """
     costs = {name: float(getattr(table, name)[0].mean()) for name in COSTS}
-    return _score(prospect, table, 0, costs, promise=np.nan)
+    (counts,) = _counts(table)
+    return _score(prospect, table, 0, counts, costs, promise=np.nan)
 
 
 def raced_scores(raced: Raced) -> list[Score]:
@@ -47,11 +49,13 @@ def raced_scores(raced: Raced) -> list[Score]:
     Epochs and hours are means over the weather of `costs.SKIES` trials: whole visits, and the
     standard stars of each night as if this target alone called for them.
     """
+    counts = _counts(raced.table)
     return [
         _score(
             raced.offer.prospect(layout),
             raced.table,
             i,
+            counts[i],
             {name: float(getattr(forecast, name)) for name in COSTS},
             promise=forecast.success,
             added=i >= raced.candidates,
@@ -62,10 +66,35 @@ def raced_scores(raced: Raced) -> list[Score]:
     ]
 
 
+class _Counts(NamedTuple):
+    """Shares of one layout's trials, each with its bounds."""
+
+    success: float
+    success_lo: float
+    success_hi: float
+    false: float
+    false_lo: float
+    false_hi: float
+
+
+def _counts(table: TrialTable) -> list[_Counts]:
+    """Return the shares of right and of wrong claims of every layout; NaN without trials."""
+    columns = []
+    for hits in (table.success.sum(axis=1), (table.claim & ~table.success).sum(axis=1)):
+        lo, hi = (
+            final_bounds(hits, table.trials, table.most)
+            if table.most
+            else wilson(hits, table.trials)
+        )
+        columns += [np.where(table.trials > 0, hits / np.maximum(table.trials, 1), np.nan), lo, hi]
+    return [_Counts(*(float(value) for value in row)) for row in zip(*columns, strict=True)]
+
+
 def _score(
     prospect: Prospect,
     table: TrialTable,
     i: int,
+    counts: _Counts,
     costs: Mapping[str, float],
     promise: float,
     *,
@@ -74,16 +103,6 @@ def _score(
     layout, trials = table.layouts[i], int(table.trials[i])
     placing = place_in(prospect, layout)
     can = placing.first.size > 0
-    success = int(table.success[i].sum())
-    claims = int(table.claim[i].sum())
-    if table.most:
-        (lo, hi), (false_lo, false_hi) = (
-            final_bounds(hits, trials, table.most) for hits in (success, claims - success)
-        )
-    else:
-        (lo, hi), (false_lo, false_hi) = (
-            wilson(hits, trials) for hits in (success, claims - success)
-        )
     note = placing.note or _short_of_time(prospect, costs)
     if can and not trials:
         note = note or NOT_NEEDED
@@ -91,13 +110,13 @@ def _score(
         target=table.target,
         layout=layout,
         promise=promise,
-        success=success / trials if trials else np.nan,
-        success_lo=float(lo) if can else 0.0,
-        success_hi=float(hi) if can else 0.0,
-        claims=claims / trials if trials else np.nan,
-        false_claims=(claims - success) / trials if trials else np.nan,
-        false_claims_lo=float(false_lo) if can else 0.0,
-        false_claims_hi=float(false_hi) if can else 0.0,
+        success=counts.success,
+        success_lo=counts.success_lo if can else 0.0,
+        success_hi=counts.success_hi if can else 0.0,
+        claims=counts.success + counts.false,
+        false_claims=counts.false,
+        false_claims_lo=counts.false_lo if can else 0.0,
+        false_claims_hi=counts.false_hi if can else 0.0,
         trials=trials if can else 0,
         note=note,
         added=added,

@@ -2,8 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
-from dataclasses import dataclass, replace
+from collections.abc import Callable, Iterator
+from dataclasses import dataclass
 from typing import NamedTuple
 
 import numpy as np
@@ -37,7 +37,8 @@ __all__ = [
 ]
 
 Floats = NDArray[np.float64]
-Used = tuple[tuple[NDArray[np.bool_], ...], tuple[NDArray[np.bool_], ...]]
+Nights = NDArray[np.bool_]
+Used = tuple[tuple[Nights, ...], tuple[Nights, ...]]
 """For continuum and line, by telescope: which of the nights on offer are used."""
 
 
@@ -82,20 +83,21 @@ def with_spectra(
 
 def observe(prospect: Prospect, draw: Draw, used: Used) -> Curves:
     """Return the light curves of the nights that were used, telescopes joined."""
-    streams = []
-    for feeds, measured, taken in (
-        (prospect.continuum, draw.continuum, used[0]),
-        (prospect.line, draw.line, used[1]),
-    ):
-        streams.append(
-            joined(
-                [
-                    (feed.best_mjd[mine], flux[mine], error[mine])
-                    for feed, (flux, error), mine in zip(feeds, measured, taken, strict=True)
-                ]
-            )
-        )
-    return Curves(*streams[0], *streams[1])
+    return Curves(
+        *_stream(prospect.continuum, draw.continuum, used[0]),
+        *_stream(prospect.line, draw.line, used[1]),
+    )
+
+
+def _stream(
+    feeds: tuple[FeedNights, ...], measured: tuple[Measured, ...], used: tuple[Nights, ...]
+) -> tuple[Floats, Floats, Floats]:
+    """Return times, fluxes and errors of one stream, telescopes joined."""
+    curves = [
+        (feed.best_mjd[mine], flux[mine], error[mine])
+        for feed, (flux, error), mine in zip(feeds, measured, used, strict=True)
+    ]
+    return joined(curves) if len(curves) > 1 else curves[0]
 
 
 @dataclass(frozen=True, slots=True)
@@ -119,27 +121,31 @@ class _Case(NamedTuple):
 
     layout: int
     trial: int
-    draw: Draw
+    draws: tuple[Draw, ...]
     used: Used
     span_d: float
     label: str
 
 
-def _cases(task: Task) -> Iterator[_Case]:
+def _cases(
+    task: Task, draws_of: Callable[[Setting, Prospect, int], tuple[Draw, ...]]
+) -> Iterator[_Case]:
     """Yield every trial of every layout; layouts share a trial's draws."""
     placings = [place_in(task.prospect, layout) for layout in task.layouts]
+    if not any(placing.first.size for placing in placings):
+        return
     for trial in range(task.first, task.last):
-        draw = draw_trial(task.setting, task.prospect, trial)
+        draws = draws_of(task.setting, task.prospect, trial)
         for i, (layout, placing) in enumerate(zip(task.layouts, placings, strict=True)):
             if placing.first.size == 0:
                 continue
             span = float(placing.last[-1] - placing.first[0])
             if task.used is None:
-                used = nights_used(task.prospect, layout, placing, draw.usable)
-                yield _Case(i, trial, draw, used, span, str(layout))
+                used = nights_used(task.prospect, layout, placing, draws[0].usable)
+                yield _Case(i, trial, draws, used, span, str(layout))
             else:
                 used = task.used[trial - task.first]
-                yield _Case(i, trial, draw, used, span, f"executed {layout}")
+                yield _Case(i, trial, draws, used, span, f"executed {layout}")
 
 
 def run_strangers(task: Task) -> dict[str, NDArray[np.float64]]:
@@ -153,20 +159,16 @@ def run_strangers(task: Task) -> dict[str, NDArray[np.float64]]:
     shape = (len(task.layouts), task.last - task.first, UNRELATED)
     peaks = np.full(shape, np.nan)
     detrend = task.setting.simulation.detrend
-    drawn: dict[int, tuple[tuple[Measured, ...], ...]] = {}
-    for case in _cases(task):
-        curves = observe(task.prospect, case.draw, case.used)
+    for case in _cases(task, draw_strangers):
+        first, *others = case.draws
+        curves = observe(task.prospect, first, case.used)
         if enough(curves):
-            if case.trial not in drawn:
-                drawn = {case.trial: draw_strangers(task.setting, task.prospect, case.trial)}
-            strangers = [
-                observe(task.prospect, replace(case.draw, line=line), case.used).f_line
-                for line in drawn[case.trial]
+            lines = [curves.f_line] + [
+                _stream(task.prospect.line, draw.line, case.used[1])[1] for draw in others
             ]
-            found = peaks_of_strangers(
-                task.prospect, curves, strangers, case.span_d, detrend=detrend
+            peaks[case.layout, case.trial - task.first] = peaks_of_strangers(
+                task.prospect, curves, lines, case.span_d, detrend=detrend
             )
-            peaks[case.layout, case.trial - task.first, : len(found)] = found
     return {"r_unrelated": peaks}
 
 
@@ -189,15 +191,23 @@ def run_trials(task: Task) -> dict[str, NDArray[np.float64]]:
     table = {name: np.full(shape, np.nan) for name in _LAGS}
     table |= {name: np.zeros(shape) for name in _COUNTS}
     table["reason"][:] = REASONS.index("cannot be scheduled")
-    for case in _cases(task):
+    for case in _cases(task, lambda *key: (draw_trial(*key),)):
+        draw = case.draws[0]
         at = (case.layout, case.trial - task.first)
         limit = task.limits[case.layout]
-        curves = observe(task.prospect, case.draw, case.used)
+        curves = observe(task.prospect, draw, case.used)
         found = recover(
-            task.setting, task.prospect, curves, case.span_d, case.label, case.trial, limit
+            task.setting,
+            task.prospect,
+            curves,
+            case.span_d,
+            case.label,
+            case.trial,
+            limit,
+            draw.lag_obs_d,
         )
-        claim, success, reason = judge(found, case.draw.lag_obs_d, task.setting.success, limit)
-        table["lag_true_d"][at] = case.draw.lag_obs_d
+        claim, success, reason = judge(found, draw.lag_obs_d, task.setting.success, limit)
+        table["lag_true_d"][at] = draw.lag_obs_d
         table["claim"][at], table["success"][at], table["reason"][at] = claim, success, reason
         for name, value in hours_of(task.prospect, case.used).items():
             table[name][at] = value

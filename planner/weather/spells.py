@@ -9,6 +9,8 @@ back to Gabriel & Neumann (1962, QJRMS 88, 90), who used them for daily rain.
 
 from __future__ import annotations
 
+from functools import lru_cache
+
 import numpy as np
 from numpy.typing import NDArray
 
@@ -70,7 +72,7 @@ def clear_nights(
     turns it round. So the state is that of the last night decided alone, turned round as often as
     draws since then say: no loop over nights is needed.
     """
-    after_clear, after_lost = _chances(climate, nights)
+    after_clear, after_lost = _chances(climate, int(nights[0]) if nights.size else 0, nights.size)
     decided = (uniforms < np.minimum(after_clear, after_lost)) | (
         uniforms >= np.maximum(after_clear, after_lost)
     )
@@ -104,16 +106,18 @@ def impossible(climate: WeatherClimate) -> str | None:
     )
 
 
+@lru_cache(maxsize=64)
 def _chances(
-    climate: WeatherClimate, nights: NDArray[np.int64]
+    climate: WeatherClimate, first: int, count: int
 ) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
     """Return the chance of each night to be clear after a clear and after a lost night.
 
-    Shape (n,) each; both are p on the first night. Where the month's change, or too few clear
-    nights, would ask for a chance below 0 or above 1 after a clear night, the chance after a lost
-    night gives way, so that the night's own chance stays exact.
+    Shape (n,) each, of consecutive nights; both are p on the first night. Where the month's change,
+    or too few clear nights, would ask for a chance below 0 or above 1 after a clear night, the
+    chance after a lost night gives way, so that the night's own chance stays exact. Kept, because
+    all trials share it.
     """
-    now = expected_clear(climate, nights)
+    now = expected_clear(climate, np.arange(first, first + count))
     before = now[:-1]
     lost_before = 1 - before
     with np.errstate(divide="ignore", invalid="ignore"):

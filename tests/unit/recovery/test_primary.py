@@ -5,7 +5,7 @@ import pytest
 
 from planner.recovery import joined, recover_lag
 from planner.recovery.curve import tidy_pair
-from planner.recovery.primary import overlap_weight, primary_peak
+from planner.recovery.primary import median_step, overlap_weight, primary_peak
 
 LAGS = np.arange(-50.0, 250.5, 0.5)
 
@@ -25,6 +25,51 @@ def test_lags_that_shift_a_season_under_a_gap_weigh_little():
     assert weight[1] == pytest.approx((1 - 30 / 180) ** 2, abs=0.03)
     assert weight[2] == pytest.approx(0.0, abs=1e-3)
     assert weight[3] == pytest.approx(0.25, abs=0.01)
+
+
+def test_weight_equals_a_plain_count_of_covered_epochs():
+    rng = np.random.default_rng(21)
+    t1 = np.unique(np.concatenate([rng.integers(0, 300, 80), rng.integers(600, 900, 80)])) / 2
+    t2 = np.unique(rng.integers(0, 900, 60)) / 2
+    gap = np.flatnonzero(np.diff(t1) > 10 * np.median(np.diff(t1)))
+    seasons = np.split(t1, gap + 1)
+    assert len(seasons) == 2
+
+    def covered(lag):
+        return sum(any(s[0] <= t - lag <= s[-1] for s in seasons) for t in t2)
+
+    expected = [min(covered(lag) / covered(0.0), 1.0) ** 2 for lag in LAGS]
+    np.testing.assert_allclose(overlap_weight(t1, t2, LAGS), expected)
+
+
+@pytest.mark.parametrize("count", [2, 3, 8, 9])
+def test_median_step_is_the_median_of_the_steps(count):
+    t = np.cumsum(np.random.default_rng(count).uniform(0.1, 3.0, count))
+    assert median_step(t) == np.median(np.diff(t))
+
+
+def test_primary_peak_equals_a_plain_search_from_valley_to_valley():
+    rng = np.random.default_rng(33)
+    for _ in range(30):
+        middles = rng.uniform(-40, 240, 3)
+        found = np.clip(rng.choice(middles, 40) + rng.normal(0, 6, 40), LAGS[0], LAGS[-1])
+        weight = rng.uniform(0.2, 1.0) * np.ones(LAGS.size)
+        weight[LAGS > 100] *= 0.5
+        density = np.zeros(LAGS.size)
+        for lag in found:
+            density += np.interp(lag, LAGS, weight) * np.exp(-0.5 * ((LAGS - lag) / 10.0) ** 2)
+        top = int(np.argmax(density))
+        a = top
+        while a > 0 and density[a - 1] < density[a]:
+            a -= 1
+        b = top
+        while b < LAGS.size - 1 and density[b + 1] < density[b]:
+            b += 1
+        outside = [d for k, d in enumerate(density) if not a <= k <= b]
+        peak = primary_peak(LAGS, found, weight, 400.0)
+        assert (peak.lo_d, peak.hi_d) == (LAGS[a], LAGS[b])
+        assert peak.share == np.mean((found >= LAGS[a]) & (found <= LAGS[b]))
+        assert peak.rival == pytest.approx(max(outside, default=0.0) / density[top], abs=1e-6)
 
 
 def test_the_weight_decides_between_peaks_and_shares_are_unweighted():

@@ -19,3 +19,12 @@ def test_unusable_epochs_are_left_out():
     assert one.t_d.tolist() == [0.0]
     assert one.flux.tolist() == [9.0]
     assert two.t_d.size == 0
+
+
+def test_one_error_for_all_epochs_and_what_was_given_stays_as_it_is():
+    t, flux = np.arange(5.0), np.arange(5.0)
+    one, _ = tidy_pair(t, flux, 0.3, t, flux, 0.0)
+    assert one.error.tolist() == [0.3] * 5
+    one.flux[0], one.error[0] = 9.0, 9.0
+    assert flux[0] == 0.0
+    assert one.error[1] == 0.3

@@ -2,7 +2,8 @@ import numpy as np
 import pytest
 
 from planner.lightcurves import draw_pair
-from planner.recovery import lag_grid, recover_lag, search_range
+from planner.recovery import lag_grid, peak_correlation, recover_lag, search_range
+from planner.recovery.lag import BATCH, peak_correlations
 
 LAGS = np.arange(-10.0, 20.5, 0.5)
 FEW = "the light curves overlap in too few points, or do not vary, at every lag searched"
@@ -184,3 +185,50 @@ def test_a_search_as_wide_as_the_correlation_function_does_not_bias_the_lag():
         ratios.append(recover_lag(t1, f1, 0.05, t2, f2, 0.05, lags, 40, rng).lag_d / lag)
     assert np.nanmedian(ratios) == pytest.approx(1.0, abs=0.06)
     assert np.mean(np.abs(np.array(ratios) - 1.0) < 0.3) > 0.85
+
+
+def test_resampling_ends_when_it_is_decided_with_the_first_of_all_resamples():
+    t, f1, f2 = pair()
+    seen = []
+
+    def decided(result):
+        seen.append(result.drawn)
+        return result.drawn >= 2 * BATCH
+
+    whole = recover(t, f1, 0.3, t, f2, 0.3, resamples=100)
+    ended = recover(t, f1, 0.3, t, f2, 0.3, resamples=100, decided=decided)
+    assert (whole.drawn, ended.drawn, seen) == (100, 2 * BATCH, [BATCH, 2 * BATCH])
+    assert whole.share == ended.share == 1.0
+    np.testing.assert_array_equal(ended.centroids_d, whole.centroids_d[: 2 * BATCH])
+    assert ended.lag_d != whole.lag_d
+    alone = recover(t, f1, 0.3, t, f2, 0.3, resamples=2 * BATCH)
+    assert (ended.lag_d, ended.lag_lo_d, ended.lag_hi_d) == (
+        alone.lag_d, alone.lag_lo_d, alone.lag_hi_d,
+    )  # fmt: skip
+
+
+def test_what_is_never_decided_draws_all():
+    t, f1, f2 = pair()
+    whole = recover(t, f1, 0.3, t, f2, 0.3, resamples=60)
+    same = recover(t, f1, 0.3, t, f2, 0.3, resamples=60, decided=lambda _: False)
+    np.testing.assert_array_equal(same.centroids_d, whole.centroids_d)
+    assert (same.lag_d, same.drawn) == (whole.lag_d, 60)
+
+
+def test_scatter_and_rival_describe_the_primary_peak():
+    t, f1, f2 = pair()
+    result = recover(t, f1, 0.02, t, f2, 0.02, resamples=24)
+    assert result.in_peak == 1.0
+    assert result.scatter_d == pytest.approx(result.centroids_d.std())
+    assert result.rival == 0.0
+
+
+def test_several_lines_give_the_peaks_of_each():
+    t, f1, f2 = pair()
+    lines = [f2, -f2, np.roll(f2, 11), np.full(t.size, np.nan)]
+    peaks = peak_correlations(t, f1, 0.1, t, lines, 0.1, LAGS, detrend=True)
+    one_by_one = [peak_correlation(t, f1, 0.1, t, f, 0.1, LAGS, detrend=True) for f in lines]
+    assert np.array_equal(peaks, one_by_one, equal_nan=True)
+    whole = recover(t, f1, 0.1, t, f2, 0.1, resamples=0, detrend=True)
+    assert peaks[0] == whole.r_max > 0.9
+    assert np.isnan(peaks[3])
