@@ -24,8 +24,8 @@ PURE = {
     "epochs_line", "epochs_continuum", "claims", "false_claims", "false_claims_lo",
     "false_claims_hi", "throughput", "obstruction", "technical_loss", "read_share", "wanted_error",
     "moon_illumination_max", "scale_error", "hours_shutter", "hours_per_night", "whole_nights",
-    "least_hours_per_night", "in_peak_above", "false_alarm_below", "r_unrelated", "promise", "share",
-    "gain_lo", "gain_hi", "value", "lags", "lags_lo", "lags_hi", "spent", "deepen",
+    "least_hours_per_night", "in_peak_above", "false_alarm_below", "r_unrelated", "promise",
+    "share", "gain_lo", "gain_hi", "value", "lags", "lags_lo", "lags_hi", "spent", "deepen",
     "exposure_line", "exposure_continuum", "prospects",
 }  # fmt: skip
 RECORDS = [
