@@ -54,7 +54,8 @@ class Cluster:
             self._client = distributed.Client(
                 self._address, timeout=CONNECT_S, set_as_default=False
             )
-        except (OSError, ValueError, TypeError) as error:
+        # AssertionError: its event loop did not start in time, as on a machine with no time left.
+        except (OSError, ValueError, TypeError, AssertionError) as error:
             raise InputError(
                 f"no Dask scheduler answers at {self._address}; start one by `dask scheduler`, "
                 "or give the address that it prints"
