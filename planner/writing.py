@@ -16,20 +16,18 @@ from planner.model.trial import Prospect, Score, TrialTable
 from planner.schedule import Request, requests_of
 from planner.scoring import Setting, ambiguity_of, example_of, setting_of
 
-__all__ = ["write_plan"]
+__all__ = ["write_plan", "write_schedule"]
 
 
 def write_plan(plan: Plan, reading: Reading, folder: Path, workers: Workers) -> None:
     """Write everything a plan holds into a folder that is ours. Raises `OutputError`."""
     names = [t.name for t in plan.campaign.targets]
-    schedule = export.schedule_table(plan.campaign, plan.visits)
     tables = {
         "lags": export.lags_table(plan.forecasts),
         "windows": export.windows_table(names, plan.skies),
         "seasons": export.seasons_table(plan.campaign, plan.prospects),
         "scores": export.scores_table(plan.scores),
         "recommendation": export.recommendation_table(plan),
-        "schedule": schedule,
         "epochs": export.epochs_table(plan.prospects),
         "time": export.time_table(plan.time_spent),
         "opinions": export.opinions_table(plan.opinions),
@@ -37,26 +35,37 @@ def write_plan(plan: Plan, reading: Reading, folder: Path, workers: Workers) -> 
         "helps": export.helps_table(plan.recommendations),
         "sensitivity": export.sensitivity_table(plan.sensitivities),
         "lists": export.subsets_table(plan.subsets),
-        "blocks": export.blocks_table(plan.campaign, _requests(plan), plan.visits),
     }
     for name, table in tables.items():
         export.write_ecsv(table, folder / f"{name}.ecsv")
-    export.write_csv(schedule, folder / "schedule.csv")
-    export.write_csv(tables["blocks"], folder / "blocks.csv")
-    write_bytes(folder / "schedule.ics", export.calendar(plan.campaign, schedule))
-    write_bytes(folder / "schedule.json", export.schedule_json(plan.campaign, schedule))
-    write_bytes(folder / "nights.html", export.night_sheets(plan.campaign, plan.skies, plan.visits))
+    write_schedule(plan, folder)
     figures = draw_figures(plan, workers)
     (folder / "figures").mkdir(exist_ok=True)
     stems = file_names(figures)
     for title, image in figures.items():
         write_bytes(folder / "figures" / f"{stems[title]}.png", image)
+    for old in (folder / "figures").glob("*.png"):
+        if old.stem not in stems.values():
+            old.unlink()  # of a target that an earlier plan in this folder had
     defaults = [(d.key, d.value, d.reason) for d in reading.defaults]
     write_bytes(
         folder / "report.html",
         report.page(plan, figures, export.as_rows(tables["epochs"]), defaults),
     )
     export.run_json(plan.run, folder / "run.json")
+
+
+def write_schedule(plan: Plan, folder: Path) -> None:
+    """Write what telescopes and teams need of a plan into a folder. Raises `OutputError`."""
+    campaign = plan.campaign
+    schedule = export.schedule_table(campaign, plan.visits)
+    blocks = export.blocks_table(campaign, _requests(plan), plan.visits)
+    for name, table in (("schedule", schedule), ("blocks", blocks)):
+        export.write_ecsv(table, folder / f"{name}.ecsv")
+        export.write_csv(table, folder / f"{name}.csv")
+    write_bytes(folder / "schedule.ics", export.calendar(campaign, schedule))
+    write_bytes(folder / "schedule.json", export.schedule_json(campaign, schedule))
+    write_bytes(folder / "nights.html", export.night_sheets(campaign, plan.skies, plan.visits))
 
 
 def _requests(plan: Plan) -> tuple[Request, ...]:

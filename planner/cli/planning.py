@@ -134,15 +134,16 @@ def _forecast(
 def schedule(options: Namespace) -> int:
     """Print the night-by-night schedule of all targets."""
     from planner import export, pipeline
+    from planner.writing import write_schedule
 
     reading = read(options)
     folder = claim(options, reading)
     with working(options, folder) as tools:
         made = pipeline.make_plan(reading, tools)
-    table = export.schedule_table(made.campaign, made.visits)
     if folder is not None:
-        export.write_csv(table, folder / "schedule.csv")
-    if give(options, folder, {"schedule": table}):
+        write_schedule(made, folder)
+    table = export.schedule_table(made.campaign, made.visits)
+    if give(options, None, {"schedule": table}):
         return 0
     say(
         table_text(

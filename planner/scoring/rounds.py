@@ -118,6 +118,12 @@ class _Racer:
         ]
         return sorted(likely, key=lambda f: f.hours)[:NEWCOMERS]
 
+    def best_so_far(self) -> str:
+        """Say how well the best layout does, in a few words."""
+        table = self.table()
+        share = table.success.sum(axis=1) / np.maximum(table.trials, 1)
+        return f"{self.offer.target} {share.max(initial=0.0):.0%} at best"
+
     def rows(self, layout: int, last: int) -> list[Row]:
         """Return the rows that bring a layout to `last` trials."""
         mine = self.parts[layout]
@@ -174,7 +180,8 @@ def race_targets(setting: Setting, offers: Sequence[Offer], tools: Tools) -> lis
     for _ in range(GENERATIONS + 1):
         winners = running
         while running:
-            stage.note = f"{len(racers) - len(running)} of {len(racers)} targets settled"
+            settled = len(racers) - len(running)
+            stage.note = f"{settled} of {len(racers)} targets settled, {running[0].best_so_far()}"
             running = _one_round(running, tools)
         running = _joined(winners, tools)
     stage.end()

@@ -16,7 +16,7 @@ FILE = Path(__file__).with_name("small.yaml").read_text()
 
 TABLES = (
     "lags", "windows", "seasons", "epochs", "scores", "recommendation", "opinions", "schedule",
-    "time",
+    "time", "limits", "helps", "sensitivity", "lists", "blocks",
 )  # fmt: skip
 
 
@@ -60,7 +60,8 @@ def contents(folder):
 def test_a_plan_holds_every_file_of_the_contract(planned):
     names = set(contents(planned))
     assert {f"{name}.ecsv" for name in TABLES} <= names
-    assert {"schedule.csv", "report.html", "run.json"} <= names
+    assert {"report.html", "run.json", "schedule.csv", "schedule.ics", "schedule.json"} <= names
+    assert {"blocks.csv", "nights.html"} <= names
     assert "figures/success-One.png" in names
     assert "figures/example-Two.png" in names
     assert "figures/visibility-Ridge.png" in names
