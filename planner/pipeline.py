@@ -56,6 +56,7 @@ from planner.scoring import (
 )
 
 __all__ = [
+    "dark_hours",
     "forecast_targets",
     "make_plan",
     "observe_sky",

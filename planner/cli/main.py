@@ -101,11 +101,13 @@ def _parser() -> argparse.ArgumentParser:
                 action="store_true",
                 help="no trials: rank the layouts by the information in their epochs, in seconds",
             )
-            command.add_argument(
-                "--hours",
-                type=_hours,
-                metavar="N",
-                help="also find the list of targets with the most lags for so many clock hours",
+            budget = command.add_mutually_exclusive_group()
+            best = "also find the list of targets with the most lags for so many"
+            budget.add_argument(
+                "--hours", type=_hours, metavar="N", help=f"{best} clock hours of both streams"
+            )
+            budget.add_argument(
+                "--nights", type=_hours, metavar="N", help=f"{best} nights of average darkness"
             )
     compare = commands.add_parser(
         "compare",
@@ -185,7 +187,7 @@ def _hours(text: str) -> float:
     except ValueError:
         hours = -1.0
     if not 0.0 <= hours < 1e6:
-        raise argparse.ArgumentTypeError(f"found {text!r}; expected hours from 0, such as 120")
+        raise argparse.ArgumentTypeError(f"found {text!r}; expected a number from 0, such as 120")
     return hours
 
 

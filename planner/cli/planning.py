@@ -40,9 +40,12 @@ def score(options: Namespace) -> int:
     reading = read(options)
     campaign = reading.campaign
     folder = claim(options, reading)
-    offers = pipeline.offers_of(
-        campaign, pipeline.forecast_targets(campaign), observe_sky(campaign)
-    )
+    skies = observe_sky(campaign)
+    offers = pipeline.offers_of(campaign, pipeline.forecast_targets(campaign), skies)
+    hours = options.hours
+    if options.nights is not None:
+        site = campaign.site(campaign.line.feeds[0].telescope).name
+        hours = options.nights * pipeline.dark_hours(skies)[site]
     with working(options, folder) as tools:
         if options.forecast:
             return _forecast(options, campaign, offers, tools, folder)
@@ -50,8 +53,8 @@ def score(options: Namespace) -> int:
     flat = [s for r in raced for s in raced_scores(r)]
     tables = {"scores": export.scores_table(flat)}
     lists: tuple[Subset, ...] = ()
-    if options.hours is not None:
-        lists = lists_of(campaign, raced, [], options.hours)
+    if hours is not None:
+        lists = lists_of(campaign, raced, [], hours)
         tables["lists"] = export.subsets_table(lists)
     if give(options, folder, tables):
         return 0
@@ -92,7 +95,7 @@ def score(options: Namespace) -> int:
     for best in lists:
         names = ", ".join(name for name, _ in best.chosen) or "none"
         say(
-            f"\nBest list for {best.hours:g} clock hours: {names}; {best.lags:.1f} right lags "
+            f"\nBest list for {best.hours:.0f} clock hours: {names}; {best.lags:.1f} right lags "
             f"({best.lags_lo:.0f} to {best.lags_hi:.0f}), {best.spent:.0f} h spent"
         )
     return 0

@@ -288,7 +288,15 @@ def test_second_opinions_stand_beside_the_recommendation(planned):
 
 @pytest.mark.slow
 def test_score_and_schedule_print_tables(file, capsys):
-    assert main(["score", str(file), "--quiet", "--workers", "1"]) == 0
-    assert "120 d" in capsys.readouterr().out
+    words = ["score", str(file), "--quiet", "--workers", "1"]
+    assert main([*words, "--nights", "2"]) == 0
+    told = capsys.readouterr().out
+    assert "120 d" in told
+    # Two nights of some ten dark hours; either target takes more than all of it, or one fits.
+    assert "Best list for" in told
+    assert "right lags" in told
+    assert main([*words, "--hours", "5", "--json"]) == 0
+    result = json.loads(capsys.readouterr().out)
+    assert all(row["spent"] <= 5 for row in result["lists"])
     assert main(["schedule", str(file), "--quiet", "--workers", "1"]) == 0
     assert "A plan is no permission" in capsys.readouterr().out
